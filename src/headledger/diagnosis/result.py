@@ -1,0 +1,240 @@
+"""What a check found, frozen: the one thing that text, screen, sheet and result file are made from. SI inside."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from enum import StrEnum
+
+from headledger.plant.digest import Reject
+from headledger.plant.job import Job, SpellKind
+from headledger.quantities import Unit
+
+
+class Verdict(StrEnum):
+    """What is said of a gauge."""
+
+    PASS = "pass"
+    FAIL = "fail"
+    UNRESOLVED = "unresolved"
+    UNCHECKED = "unchecked"
+
+
+class CauseKind(StrEnum):
+    """Every kind of cause that the result file knows."""
+
+    ZERO_SHIFT = "zero-shift"
+    SPAN_ERROR = "span-error"
+    DRIFT = "drift"
+    STEP = "step"
+    FROZEN = "frozen"
+    SLUGGISH = "sluggish"
+    NOISY = "noisy"
+    AT_LIMIT = "at-limit"
+    WRONG_UNIT = "wrong-unit"
+    WRONG_REFERENCE = "wrong-reference"
+    WRONG_ELEVATION = "wrong-elevation"
+    LEG_GAS = "leg-gas"
+    SWAPPED = "swapped"
+    CLOCK_OFFSET = "clock-offset"
+    CROSSED_LINES = "crossed-lines"
+    EQUALISED = "equalised"
+    ROOT = "root"
+    BLOCKAGE = "blockage"
+    LOW_LOSS = "low-loss"
+    AIR_POCKET = "air-pocket"
+    CLOSED_OFF = "closed-off"
+    VAPOUR = "vapour"
+    FLOW_METER_ERROR = "flow-meter-error"
+    PUMP_LIFT = "pump-lift"
+    DENSITY_ERROR = "density-error"
+    LEAK = "leak"
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Place:
+    """Where a cause sits: at most one of gauge, gauges, run and station; none of them is the whole job.
+
+    Parameters
+    ----------
+    gauge, run, station : str
+        Empty where it does not apply.
+    gauges : tuple of str
+        A swapped pair, or the gauges of one late log file.
+    """
+
+    gauge: str = ""
+    gauges: tuple[str, ...] = ()
+    run: str = ""
+    station: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class FlowFound:
+    """Flow of a run in a spell, metered or found. [m³/s], `u95_m3_s` with k = 2."""
+
+    run: str
+    flow_m3_s: float
+    u95_m3_s: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SpellFound:
+    """A stretch of the log in which the flow state held steady.
+
+    Parameters
+    ----------
+    id : int
+        1 is the first.
+    kind : SpellKind
+    start_s, end_s : float
+        Seconds since 1970-01-01 UTC. [s]
+    samples : int
+        Rows of the log within it.
+    flows : tuple of FlowFound
+        One for every run.
+    """
+
+    id: int
+    kind: SpellKind
+    start_s: float
+    end_s: float
+    samples: int
+    flows: tuple[FlowFound, ...] = ()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class GaugeSpell:
+    """What a gauge said in a spell and what it should have said. Pressures in its own reference. [Pa]
+
+    Parameters
+    ----------
+    id : int
+        Of the spell.
+    reading_pa : float or None
+        None where it gave no value.
+    expected_pa, u95_pa : float or None
+        Predicted from everything but this gauge under the leading explanation; None where nothing determines it.
+    """
+
+    id: int
+    reading_pa: float | None
+    expected_pa: float | None
+    u95_pa: float | None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class GaugeFound:
+    """The verdict on one gauge.
+
+    Parameters
+    ----------
+    tag, station : str
+    unit : Unit
+    verdict : Verdict
+    outside_probability : float
+        That its own error exceeds the tolerance in some spell. [-]
+    error_pa, u95_pa, tolerance_pa : float
+        In the spell where the error is most probably outside, under the leading explanation. [Pa]
+    spells : tuple of GaugeSpell
+    causes, given : tuple of int
+        Indices into the causes of the result: at this gauge, and elsewhere where the verdict leans on them.
+    why : str
+    """
+
+    tag: str
+    station: str
+    unit: Unit
+    verdict: Verdict
+    outside_probability: float
+    error_pa: float
+    u95_pa: float
+    tolerance_pa: float
+    spells: tuple[GaugeSpell, ...]
+    causes: tuple[int, ...] = ()
+    given: tuple[int, ...] = ()
+    why: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Rival:
+    """A cause that the data cannot tell from another."""
+
+    kind: CauseKind
+    place: Place
+    probability: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CauseFound:
+    """One explanation that the data give weight to.
+
+    Parameters
+    ----------
+    kind : CauseKind
+    place : Place
+    size, u95 : float or None
+        In SI, or a ratio; `u95` is k = 2. None where the kind has no size.
+    unit : Unit or None
+        In which the size is spoken of; None for ratios and loss coefficients.
+    start_s : float or None
+        When a drift, step or frozen begins. [s since 1970-01-01 UTC]
+    probability : float
+        Summed over every set of causes weighed. [-]
+    accepted : bool
+    rivals : tuple of Rival
+    says : str
+        The finding in words.
+    """
+
+    kind: CauseKind
+    place: Place
+    size: float | None
+    u95: float | None
+    unit: Unit | None
+    probability: float
+    accepted: bool
+    start_s: float | None = None
+    rivals: tuple[Rival, ...] = ()
+    says: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class InputFile:
+    """A file that the result rests on."""
+
+    file: str
+    sha256: str
+    rows: int
+    rejected: int
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CheckResult:
+    """Everything a check found.
+
+    Parameters
+    ----------
+    job : Job
+    inputs : tuple of InputFile
+    spells : tuple of SpellFound
+    clean_probability : float
+        That nothing is wrong. [-]
+    gauges : tuple of GaugeFound
+        In the order of the gauge table.
+    causes : tuple of CauseFound
+        The most probable first.
+    rejects : tuple of Reject
+    reject_count : int
+    remarks : tuple of str
+        What was taken for granted, converted, or could not be used, a sentence each.
+    """
+
+    job: Job
+    inputs: tuple[InputFile, ...]
+    spells: tuple[SpellFound, ...]
+    clean_probability: float
+    gauges: tuple[GaugeFound, ...]
+    causes: tuple[CauseFound, ...]
+    rejects: tuple[Reject, ...] = ()
+    reject_count: int = 0
+    remarks: tuple[str, ...] = ()
