@@ -1,0 +1,381 @@
+"""The joint model of a job: all rows of all spells, linearised at a point, with every doubt carried.
+
+Rows of a spell are the readings of its gauges, meters beyond those that set a flow, surfaces with a level, and the loops that must
+close. Its own unknowns are the heads of its parts and, while liquid moves, its independent flows.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from headledger.diagnosis.budget import UncertainInput, input_marks, uncertain_inputs
+from headledger.diagnosis.layout import Layout
+from headledger.diagnosis.means import SpellMeans
+from headledger.diagnosis.state import Applied, Point, State, evaluate, spell_graph
+from headledger.physics.tapping import AIR_WEIGHT_PA_M
+from headledger.statistics.gaussian import Group, Whitened, own_estimate, whiten
+
+Array = NDArray[np.float64]
+
+HEAD_SD_M = 30.0
+"""Prior width of an unknown head, about the readings' own middle: what freeing a head costs an explanation. [m]"""
+
+FREE_VELOCITY_M_S = 1.5
+"""Prior width of an unmetered flow, as a velocity in its bore: the usual range of piping design (common practice). [m/s]"""
+
+LOOP_NOISE_M = 1e-5
+"""How exactly a loop must close: far below any reading's noise, far above rounding. [m]"""
+
+LEAST_FLOW_NOISE_FRACTION = 1e-4
+"""Floor of a metered flow's noise, so that a stated flow without noise stays solvable. [-]"""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SpellRows:
+    """Where the rows of one spell lie in the stacked data.
+
+    Parameters
+    ----------
+    start : int
+        First row.
+    gauges : ndarray of int
+        Gauges that gave a reading, in row order.
+    meters : ndarray of int
+        Runs whose meters are checked rather than used to set a flow.
+    levels : ndarray of int
+        Stations with a known surface.
+    loops : int
+        Loops that must close.
+    """
+
+    start: int
+    gauges: NDArray[np.int64]
+    meters: NDArray[np.int64]
+    levels: NDArray[np.int64]
+    loops: int
+
+    @property
+    def count(self) -> int:
+        """Number of rows."""
+        return self.gauges.size + self.meters.size + self.levels.size + self.loops
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Linear:
+    """The model linearised at one point.
+
+    Parameters
+    ----------
+    states : tuple of State
+        Of each spell at the point.
+    rows : tuple of SpellRows
+    groups : tuple of Group
+        One a spell.
+    white : Whitened
+    applied : Applied
+        Causes allowed for in the states.
+    calibration : ndarray, shape (rows, inputs)
+        How the shared inputs move the data rows, in their standard deviations (the groups' `shared`, stacked).
+    """
+
+    states: tuple[State, ...]
+    rows: tuple[SpellRows, ...]
+    groups: tuple[Group, ...]
+    white: Whitened
+    applied: Applied
+    calibration: Array
+
+    @property
+    def row_count(self) -> int:
+        """Number of rows of the stacked data."""
+        return self.calibration.shape[0]
+
+    def gauge_rows(self, gauge: int) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
+        """Rows of one gauge in the stacked data, and the spells they belong to."""
+        rows, spells = [], []
+        for spell, place in enumerate(self.rows):
+            where = np.flatnonzero(place.gauges == gauge)
+            if where.size:
+                rows.append(place.start + int(where[0]))
+                spells.append(spell)
+        return np.array(rows, dtype=np.int64), np.array(spells, dtype=np.int64)
+
+
+class Model:
+    """A job with what its spells said.
+
+    Parameters
+    ----------
+    layout : Layout
+    spells : sequence of SpellMeans
+    """
+
+    def __init__(self, layout: Layout, spells: Sequence[SpellMeans]) -> None:
+        self.layout = layout
+        self.spells = tuple(spells)
+        self.inputs: tuple[UncertainInput, ...] = uncertain_inputs(layout)
+
+    def linearise(self, points: Sequence[Point], *, applied: Applied | None = None) -> Linear:
+        """The model at a point of each spell.
+
+        Parameters
+        ----------
+        points : sequence of Point
+        applied : Applied, optional
+
+        Returns
+        -------
+        Linear
+        """
+        applied = applied or Applied()
+        states, places, groups = [], [], []
+        start = 0
+        for spell, point in zip(self.spells, points, strict=True):
+            state = evaluate(self.layout, spell, point, applied=applied)
+            place = self._rows(spell, state, start)
+            states.append(state)
+            places.append(place)
+            groups.append(self._group(spell, state, place, applied))
+            start += place.count
+        return Linear(
+            states=tuple(states),
+            rows=tuple(places),
+            groups=tuple(groups),
+            white=whiten(groups),
+            applied=applied,
+            calibration=np.vstack([group.shared for group in groups]),
+        )
+
+    def _rows(self, spell: SpellMeans, state: State, start: int) -> SpellRows:
+        """Rows of a spell."""
+        moving = state.point.flow_m3_s.size > 0
+        used = set(state.graph.basis.tolist()) if moving else set()
+        meters = [
+            run for run in range(self.layout.run_count) if moving and np.isfinite(spell.flow_m3_s[run]) and run not in used
+        ]
+        return SpellRows(
+            start=start,
+            gauges=np.flatnonzero(np.isfinite(spell.reading_pa)),
+            meters=np.array(meters, dtype=np.int64),
+            levels=np.flatnonzero(np.isfinite(spell.level_m)),
+            loops=state.graph.loop.shape[0] if moving else 0,
+        )
+
+    def _group(self, spell: SpellMeans, state: State, place: SpellRows, applied: Applied) -> Group:
+        """Residuals, doubts and derivatives of one spell's rows."""
+        layout = self.layout
+        readings, flow_marks, drop_marks = input_marks(layout, self.inputs, spell, state, applied)
+        from_flow = state.reading_from_flow(layout)
+        own_flow_marks = flow_marks[state.graph.basis] if from_flow.shape[1] else np.zeros((0, len(self.inputs)))
+        # a metered independent run flows as its meter says, give or take its gain: that gain is a shared input
+        readings = readings + from_flow @ own_flow_marks
+        drop_from_flow = state.slope_s_m2[:, None] * state.basis
+        heads = np.zeros((layout.gauge_count, 0)) if not state.graph.parts else state.reading_from_head(layout)
+        residual = [spell.reading_pa[place.gauges] - state.reading_pa[place.gauges]]
+        noise = [spell.noise_pa[place.gauges]]
+        own = [np.hstack([heads, from_flow])[place.gauges]]
+        shared = [readings[place.gauges]]
+        if place.meters.size:
+            ratio = np.array([applied.meter_ratio.get(int(run), 1.0) for run in place.meters])
+            residual.append(spell.flow_m3_s[place.meters] - ratio * state.flow_m3_s[place.meters])
+            noise.append(self._flow_noise(spell, place.meters))
+            slopes = ratio[:, None] * state.basis[place.meters]
+            own.append(np.hstack([np.zeros((place.meters.size, state.graph.parts)), slopes]))
+            shared.append(slopes @ own_flow_marks + flow_marks[place.meters])
+        if place.levels.size:
+            self._add_levels(spell, state, place, (residual, noise, own, shared), own_flow_marks, drop_marks)
+        if place.loops:
+            loop = state.graph.loop
+            residual.append(-loop @ state.drop_m)
+            noise.append(np.full(place.loops, LOOP_NOISE_M))
+            slopes = loop @ drop_from_flow
+            own.append(np.hstack([np.zeros((place.loops, state.graph.parts)), slopes]))
+            shared.append(slopes @ own_flow_marks + loop @ drop_marks)
+        own_sd, own_offset = self._own_priors(spell, state, applied)
+        return Group(
+            residual=np.concatenate(residual),
+            noise_sd=np.concatenate(noise),
+            own=np.vstack(own),
+            own_sd=own_sd,
+            own_offset=own_offset,
+            shared=np.vstack(shared),
+        )
+
+    def _add_levels(
+        self,
+        spell: SpellMeans,
+        state: State,
+        place: SpellRows,
+        parts: tuple[list[Array], list[Array], list[Array], list[Array]],
+        own_flow_marks: Array,
+        drop_marks: Array,
+    ) -> None:
+        """Append the rows that say that a surface's head is its level."""
+        residual, noise, own, shared = parts
+        at = place.levels
+        path = state.graph.path[at]
+        head = spell.level_m[at] - spell.level_m[at] * AIR_WEIGHT_PA_M / state.head_weight_pa_m
+        residual.append(head - state.head_m[at])
+        noise.append(spell.level_sd_m[at])
+        member = np.zeros((at.size, state.graph.parts))
+        member[np.arange(at.size), state.graph.part[at]] = 1.0
+        slopes = -path @ (state.slope_s_m2[:, None] * state.basis)
+        own.append(np.hstack([member, slopes]))
+        shared.append(slopes @ own_flow_marks - path @ drop_marks)
+
+    def _flow_noise(self, spell: SpellMeans, runs: NDArray[np.int64]) -> Array:
+        """Noise of metered flows, never quite nothing. [m³/s]"""
+        area = self.layout.area_m2[runs]
+        floor = LEAST_FLOW_NOISE_FRACTION * np.maximum(np.abs(spell.flow_m3_s[runs]), 0.01 * area)
+        return np.maximum(spell.flow_noise_m3_s[runs], floor)
+
+    def _own_priors(self, spell: SpellMeans, state: State, applied: Applied) -> tuple[Array, Array]:
+        """Prior widths of a spell's own unknowns, and their means less the point."""
+        graph, point = state.graph, state.point
+        middle = middle_heads_m(self.layout, spell, state)
+        offset_head = middle - point.reference_head_m
+        sd_head = np.full(graph.parts, HEAD_SD_M)
+        if not point.flow_m3_s.size:
+            return sd_head, offset_head
+        runs = graph.basis
+        metered = np.isfinite(spell.flow_m3_s[runs])
+        ratio = np.array([applied.meter_ratio.get(int(run), 1.0) for run in runs])
+        said = np.where(metered, np.nan_to_num(spell.flow_m3_s[runs]) / ratio, 0.0)
+        free = FREE_VELOCITY_M_S * self.layout.area_m2[runs]
+        sd_flow = free
+        if metered.any():
+            sd_flow = np.where(metered, self._flow_noise_or(spell, runs, free), free)
+        return np.concatenate([sd_head, sd_flow]), np.concatenate([offset_head, said - point.flow_m3_s])
+
+    def _flow_noise_or(self, spell: SpellMeans, runs: NDArray[np.int64], other: Array) -> Array:
+        """Noise of metered flows, `other` where there is no meter."""
+        metered = np.isfinite(spell.flow_m3_s[runs])
+        noise = other.copy()
+        noise[metered] = self._flow_noise(spell, runs[metered])
+        return noise
+
+    def moved(self, linear: Linear, shift: Array) -> tuple[Point, ...]:
+        """The points at which the spells' own unknowns are most probable.
+
+        Parameters
+        ----------
+        linear : Linear
+        shift : ndarray, shape (rows,)
+            What causes add to the data rows, taken off first.
+
+        Returns
+        -------
+        tuple of Point
+        """
+        mean = linear.white.shared.T @ (linear.white.residual - linear.white.mark(shift))
+        points = []
+        for state, place, group in zip(linear.states, linear.rows, linear.groups, strict=True):
+            cut = slice(place.start, place.start + place.count)
+            rest = Group(
+                residual=group.residual - shift[cut],
+                noise_sd=group.noise_sd,
+                own=group.own,
+                own_sd=group.own_sd,
+                own_offset=group.own_offset,
+                shared=group.shared,
+            )
+            step = own_estimate(rest, mean)
+            parts = state.graph.parts
+            points.append(
+                Point(
+                    reference_head_m=state.point.reference_head_m + step[:parts],
+                    flow_m3_s=state.point.flow_m3_s + step[parts:],
+                )
+            )
+        return tuple(points)
+
+
+def middle_heads_m(layout: Layout, spell: SpellMeans, state: State) -> Array:
+    """The middle of what the gauges of each part say of its reference head, with the drops of a state.
+
+    Parameters
+    ----------
+    layout : Layout
+    spell : SpellMeans
+    state : State
+
+    Returns
+    -------
+    ndarray, shape (parts,)
+        Medians, so that a minority of bad gauges does not move them; the state's own head where a part has no gauge. [m]
+    """
+    said = state.point.reference_head_m.copy()
+    single = layout.taps.head.sum(axis=1) > 0.5  # differential gauges say nothing of a head
+    usable = np.isfinite(spell.reading_pa) & single
+    if not usable.any():
+        return said
+    tap = np.argmax(layout.taps.head, axis=1)
+    part = state.graph.part[tap]
+    estimate = said[part] + (spell.reading_pa - state.reading_pa) / state.head_weight_pa_m
+    for index in range(state.graph.parts):
+        here = usable & (part == index)
+        if here.any():
+            said[index] = float(np.median(estimate[here]))
+    return said
+
+
+def first_points(layout: Layout, spells: Sequence[SpellMeans]) -> tuple[Point, ...]:
+    """Where to linearise first: flows as metered (balanced around loops), heads in the middle of what the gauges say.
+
+    Parameters
+    ----------
+    layout : Layout
+    spells : sequence of SpellMeans
+
+    Returns
+    -------
+    tuple of Point
+    """
+    points = []
+    for spell in spells:
+        graph = spell_graph(layout, spell)
+        flows = np.zeros(0) if spell.is_still else _first_flows(layout, spell)
+        point = Point(reference_head_m=np.zeros(graph.parts), flow_m3_s=flows)
+        state = evaluate(layout, spell, point)
+        points.append(Point(reference_head_m=middle_heads_m(layout, spell, state), flow_m3_s=flows))
+    return tuple(points)
+
+
+def _first_flows(layout: Layout, spell: SpellMeans) -> Array:
+    """Independent flows to start from: as metered; the others such that the loops close. [m³/s]"""
+    graph = spell_graph(layout, spell)
+    runs = graph.basis
+    metered = np.isfinite(spell.flow_m3_s[runs])
+    flows = np.where(metered, np.nan_to_num(spell.flow_m3_s[runs]), 0.0)
+    free = np.flatnonzero(~metered)
+    if not free.size or not graph.chords.size:
+        return flows
+    scale = FREE_VELOCITY_M_S * layout.area_m2[runs[free]]
+    flows[free] = 0.1 * scale
+    loss = _loop_residual(layout, spell, flows)
+    for _ in range(60):
+        residual, slopes = loss
+        step = np.linalg.lstsq(slopes[:, free] * scale, -residual, rcond=1e-9)[0] * scale
+        size = 1.0
+        for _ in range(12):
+            trial = flows.copy()
+            trial[free] += size * step
+            loss = _loop_residual(layout, spell, trial)
+            if np.abs(loss[0]).sum() < np.abs(residual).sum() * (1.0 - 1e-4 * size) or np.abs(residual).max() < LOOP_NOISE_M:
+                break
+            size /= 2.0
+        flows = trial
+        if np.abs(loss[0]).max() < 0.01 * LOOP_NOISE_M:
+            break
+    return flows
+
+
+def _loop_residual(layout: Layout, spell: SpellMeans, flows: Array) -> tuple[Array, Array]:
+    """Head lost around each loop and its derivative with the independent flows. [m], [s/m²]"""
+    graph = spell_graph(layout, spell)
+    state = evaluate(layout, spell, Point(reference_head_m=np.zeros(graph.parts), flow_m3_s=flows))
+    return graph.loop @ state.drop_m, graph.loop @ (state.slope_s_m2[:, None] * state.basis)

@@ -1,0 +1,287 @@
+"""Weighing explanations: none, every single cause, and the sets of causes that the data give weight to.
+
+The evidence of a set is its closed-form Gaussian marginal likelihood with every size integrated out; its prior comes from the one table.
+Sets grow best-first: each set within reach of the best is extended by every further cause, and each of its causes is swapped for every
+other, until nothing within reach is left.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Collection, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from headledger.diagnosis.causes.base import View
+from headledger.diagnosis.estimate import Model, first_points
+from headledger.diagnosis.frame import Frame, all_marks, make_frame, own_frame
+from headledger.diagnosis.priors import CountPrior, mark_shares
+from headledger.diagnosis.result import CauseKind, Place
+from headledger.diagnosis.state import Point
+from headledger.statistics.sizes import NODES, log_sum
+
+Array = NDArray[np.float64]
+
+REACH_NATS = 7.0
+"""Sets further below the best than this are not grown from. [nat]"""
+
+KEPT_NATS = 12.0
+"""Sets further below the best than this are not listed. [nat]"""
+
+PARALLEL = 0.9999
+"""Whitened correlation above which two marks are one and the same to the data: never together in a set."""
+
+PAIR_NODES, TRIPLE_NODES = 12, 8
+"""Quadrature nodes a sign for sets of two and three: to about 1 % in evidence, far finer than any prior is known."""
+
+OWN_SOLUTIONS = 24
+"""Leading explanations that are linearised again, each at its own solution."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Explanation:
+    """A set of causes with its weight.
+
+    Parameters
+    ----------
+    chosen : tuple of int
+        Marks in `frame`; empty for no cause.
+    frame : Frame
+    log_weight : float
+        Log of prior times evidence, on a scale common to all explanations of a search. [nat]
+    probability : float
+        [-]
+    """
+
+    chosen: tuple[int, ...]
+    frame: Frame
+    log_weight: float
+    probability: float = 0.0
+
+    @property
+    def keys(self) -> frozenset[tuple[CauseKind, Place]]:
+        """Kinds and places of its causes."""
+        return frozenset(self.frame.marks[i].key for i in self.chosen)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Posterior:
+    """What the data say of all explanations weighed.
+
+    Parameters
+    ----------
+    explanations : tuple of Explanation
+        The most probable first; probabilities sum to 1.
+    frame : Frame
+        In which all of them were first weighed.
+    """
+
+    explanations: tuple[Explanation, ...]
+    frame: Frame
+
+    @property
+    def clean_probability(self) -> float:
+        """Probability that no cause is present."""
+        return sum(e.probability for e in self.explanations if not e.chosen)
+
+    @property
+    def leading(self) -> Explanation:
+        """The most probable explanation."""
+        return self.explanations[0]
+
+    def probability(self, key: tuple[CauseKind, Place]) -> float:
+        """Probability that a cause of this kind is present at this place."""
+        return sum(e.probability for e in self.explanations if key in e.keys)
+
+
+def search(
+    model: Model,
+    *,
+    kinds: Collection[CauseKind] | None = None,
+    prior: CountPrior | None = None,
+    points: Sequence[Point] | None = None,
+    should_stop: Callable[[], bool] | None = None,
+) -> Posterior:
+    """Weigh every explanation of a model's data.
+
+    Parameters
+    ----------
+    model : Model
+    kinds : collection of CauseKind, optional
+        Only these; all by default.
+    prior : CountPrior, optional
+    points : sequence of Point, optional
+        Where to linearise, and stay; by default at the middle of the readings, then at the leading explanation's solution.
+    should_stop : callable, optional
+        Asked now and then; the search ends early, with what it has, when it says so.
+
+    Returns
+    -------
+    Posterior
+    """
+    prior = prior or CountPrior()
+    stay = points is not None
+    frame = shared_frame(model, points if points is not None else first_points(model.layout, model.spells), kinds)
+    weighed = _weigh(frame, prior, should_stop)
+    if not stay:
+        best = max(weighed, key=lambda chosen: weighed[chosen])
+        frame = shared_frame(model, _solution(model, frame, best), kinds)
+        weighed = _weigh(frame, prior, should_stop)
+    explanations = [Explanation(chosen=chosen, frame=frame, log_weight=w) for chosen, w in weighed.items()]
+    if not stay:
+        explanations = _at_own_solutions(model, explanations, prior, should_stop)
+    return Posterior(explanations=_normalised(explanations), frame=frame)
+
+
+def shared_frame(model: Model, points: Sequence[Point], kinds: Collection[CauseKind] | None = None) -> Frame:
+    """The frame of all marks at one point."""
+    linear = model.linearise(points)
+    return make_frame(linear, all_marks(View(model, linear), kinds))
+
+
+def _solution(model: Model, frame: Frame, chosen: tuple[int, ...]) -> tuple[Point, ...]:
+    """Points at which an explanation's own unknowns are most probable."""
+    shift = np.zeros(frame.linear.row_count)
+    for index in chosen:
+        shift = shift + frame.marks[index].vector * frame.size(chosen, index).mean
+    return model.moved(frame.linear, shift)
+
+
+def _normalised(explanations: list[Explanation]) -> tuple[Explanation, ...]:
+    """Explanations with probabilities, the most probable first."""
+    weights = np.array([e.log_weight for e in explanations])
+    total = float(log_sum(weights))
+    ordered = sorted(explanations, key=lambda e: -e.log_weight)
+    return tuple(
+        Explanation(chosen=e.chosen, frame=e.frame, log_weight=e.log_weight, probability=float(np.exp(e.log_weight - total)))
+        for e in ordered
+    )
+
+
+def set_log_prior(shares: NDArray[np.float64], prior: CountPrior, chosen: Sequence[int]) -> float:
+    """Log prior of one set of marks."""
+    count = len(chosen)
+    if count == 0:
+        return float(np.log(prior.of[0]))
+    # unordered sets of different causes: count! orders, less what would be the same cause twice
+    spread = float(np.sum(shares**2))
+    distinct = {1: 1.0, 2: 1.0 - spread}.get(count, max((1.0 - spread) ** 3, 0.1))
+    orders = float(np.prod(np.arange(1, count + 1)))
+    return float(np.log(prior.of[count]) + np.log(shares[list(chosen)]).sum() + np.log(orders / distinct))
+
+
+def _weigh(
+    frame: Frame, prior: CountPrior, should_stop: Callable[[], bool] | None
+) -> dict[tuple[int, ...], float]:
+    """Log weight of every set worth listing, by its sorted marks; evidence of none is taken as the zero of the scale."""
+    shares = mark_shares(frame.marks)
+    weights: dict[tuple[int, ...], float] = {(): set_log_prior(shares, prior, ())}
+    if not frame.marks or prior.most < 1:
+        return weights
+    singles = [(index,) for index in range(len(frame.marks))]
+    weights |= _evaluate(frame, shares, prior, singles)
+    if prior.most >= 2:
+        pairs = _pairs(frame)
+        bound = _pair_bounds(frame, pairs) + np.array([set_log_prior(shares, prior, pair) for pair in pairs])
+        floor = max(weights.values()) - KEPT_NATS
+        weights |= _evaluate(frame, shares, prior, [pair for pair, most in zip(pairs, bound, strict=True) if most > floor])
+    grown: set[tuple[int, ...]] = set()
+    while prior.most >= 3 and not (should_stop and should_stop()):
+        top = max(weights.values())
+        seeds = [s for s, w in weights.items() if len(s) >= 2 and w > top - REACH_NATS and s not in grown]
+        if not seeds:
+            break
+        seeds = sorted(seeds, key=lambda s: -weights[s])[:8]
+        grown |= set(seeds)
+        fresh = {n for seed in seeds for n in _neighbours(frame, seed, prior.most)} - weights.keys()
+        weights |= _evaluate(frame, shares, prior, sorted(fresh))
+    return weights
+
+
+def _compatible(frame: Frame) -> NDArray[np.bool_]:
+    """Whether two marks may stand in one set: not forms of one cause, not one and the same to the data."""
+    keys: dict[tuple[CauseKind, Place], int] = {}
+    key = np.array([keys.setdefault(mark.key, len(keys)) for mark in frame.marks])
+    length = np.sqrt(np.diag(frame.gram))
+    parallel = np.abs(frame.gram) > PARALLEL * np.outer(length, length)
+    return (key[:, None] != key[None, :]) & ~parallel
+
+
+def _pairs(frame: Frame) -> list[tuple[int, ...]]:
+    """Every pair of marks that may stand together."""
+    first, second = np.nonzero(np.triu(_compatible(frame), 1))
+    return list(zip(first.tolist(), second.tolist(), strict=True))
+
+
+def _pair_bounds(frame: Frame, pairs: Sequence[tuple[int, ...]]) -> Array:
+    """What the log gain of each pair cannot exceed: that of its best sizes, without limits and without a prior's cost."""
+    index = np.array(pairs, dtype=np.int64).reshape(-1, 2)
+    point = np.array([mark.prior.is_point for mark in frame.marks])
+    size = np.array([mark.prior.least for mark in frame.marks])
+    jacobian = np.array([mark.log_jacobian for mark in frame.marks])
+    own = np.diag(frame.gram)
+    bound = jacobian[index].sum(axis=1)
+    i, j = index[:, 0], index[:, 1]
+    cross = frame.gram[i, j]
+    for first, second in ((i, j), (j, i)):
+        # a stated size only shifts what the other one sees
+        mixed = point[first] & ~point[second]
+        fixed = frame.product[first] * size[first] - 0.5 * own[first] * size[first] ** 2
+        seen = frame.product[second] - cross * size[first]
+        bound += np.where(mixed, fixed + 0.5 * seen**2 / own[second], 0.0)
+    both = point[i] & point[j]
+    alone = [frame.product[k] * size[k] - 0.5 * own[k] * size[k] ** 2 for k in (i, j)]
+    bound += np.where(both, alone[0] + alone[1] - cross * size[i] * size[j], 0.0)
+    determinant = np.maximum(own[i] * own[j] - cross**2, 1e-12 * own[i] * own[j])
+    bi, bj = frame.product[i], frame.product[j]
+    free = 0.5 * (own[j] * bi**2 - 2.0 * cross * bi * bj + own[i] * bj**2) / determinant
+    return np.asarray(bound + np.where(~point[i] & ~point[j], free, 0.0))
+
+
+def _neighbours(frame: Frame, seed: tuple[int, ...], most: int) -> set[tuple[int, ...]]:
+    """Sets one step from a set: one mark more, or one swapped for another."""
+    compatible = _compatible(frame)
+    found: set[tuple[int, ...]] = set()
+    bases = [seed] if len(seed) < most else []
+    bases += [tuple(i for i in seed if i != gone) for gone in seed] if len(seed) > 2 else []
+    for base in bases:
+        allowed = np.all(compatible[list(base)], axis=0)
+        found |= {tuple(sorted((*base, int(more)))) for more in np.flatnonzero(allowed)}
+    return found
+
+
+def _evaluate(
+    frame: Frame, shares: NDArray[np.float64], prior: CountPrior, sets: Sequence[tuple[int, ...]]
+) -> dict[tuple[int, ...], float]:
+    """Log weights of many sets of one size, those with like priors of size in one sweep."""
+    if not sets:
+        return {}
+    index = np.array(sets)
+    log_prior = np.array([set_log_prior(shares, prior, chosen) for chosen in sets])
+    count = {1: NODES, 2: PAIR_NODES}.get(index.shape[1], TRIPLE_NODES)
+    values = frame.log_gains(index, count) + log_prior
+    return {chosen: float(value) for chosen, value in zip(sets, values, strict=True)}
+
+
+def _at_own_solutions(
+    model: Model, explanations: list[Explanation], prior: CountPrior, should_stop: Callable[[], bool] | None
+) -> list[Explanation]:
+    """The leading explanations linearised again, each at its own solution."""
+    ordered = sorted(explanations, key=lambda e: -e.log_weight)
+    base = ordered[0].frame
+    shares = mark_shares(base.marks)
+    out: list[Explanation] = []
+    for rank, e in enumerate(ordered):
+        near = e.log_weight > ordered[0].log_weight - REACH_NATS
+        if e.chosen and rank < OWN_SOLUTIONS and near and not (should_stop and should_stop()):
+            frame, chosen = own_frame(model, base, e.chosen)
+            weight = (
+                frame.log_evidence_of_none
+                - base.log_evidence_of_none
+                + frame.log_gain(chosen)
+                + set_log_prior(shares, prior, e.chosen)
+            )
+            e = Explanation(chosen=chosen, frame=frame, log_weight=weight)
+        out.append(e)
+    return out
