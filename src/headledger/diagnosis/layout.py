@@ -108,6 +108,11 @@ class Layout:
         return stated if stated is not None else float(standard_pressure_pa(self.job.site.datum_altitude_m))
 
     @cached_property
+    def nominal_density_kg_m3(self) -> float:
+        """Of the job's liquid at its stated temperature. [kg/m³]"""
+        return float(liquid_at(self.job.liquid, self.job.liquid.temperature_k).density_kg_m3)
+
+    @cached_property
     def station_elevation_m(self) -> Array:
         """Elevation of each station. [m]"""
         return np.array([station.elevation_m for station in self.job.stations])

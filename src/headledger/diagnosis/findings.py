@@ -1,0 +1,131 @@
+"""From weighed explanations to findings: each cause once, with its probability, its size and its rivals."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from dataclasses import dataclass
+
+from headledger.diagnosis.causes.base import Mark
+from headledger.diagnosis.frame import Frame
+from headledger.diagnosis.result import CauseKind, Place, Rival
+from headledger.diagnosis.search import Explanation, Posterior
+
+ACCEPTED = 0.8
+"""A cause at least this probable is accepted. [-]"""
+
+LEFT_OUT = 0.02
+"""A list of causes ends where the rest together is below this. [-]"""
+
+RIVAL_SHARE = 0.02
+"""A rival below this part of the weight that a cause and its rivals share is not named. [-]"""
+
+Key = tuple[CauseKind, Place]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Finding:
+    """One cause as the explanations have it.
+
+    Parameters
+    ----------
+    kind : CauseKind
+    place : Place
+    probability : float
+        Summed over every explanation that holds it. [-]
+    rivals : tuple of Rival
+        What stands in its stead in explanations otherwise the same, the most probable first.
+    explanation : Explanation
+        The most probable that holds it.
+    mark : Mark
+        Its mark there.
+    size, sd : float
+        Posterior mean and standard deviation of its size there, as the mark counts it.
+    """
+
+    kind: CauseKind
+    place: Place
+    probability: float
+    rivals: tuple[Rival, ...]
+    explanation: Explanation
+    mark: Mark
+    size: float
+    sd: float
+
+    @property
+    def accepted(self) -> bool:
+        """Whether it is taken as present."""
+        return self.probability >= ACCEPTED
+
+    @property
+    def frame(self) -> Frame:
+        """The frame of its explanation."""
+        return self.explanation.frame
+
+
+def list_findings(posterior: Posterior) -> tuple[Finding, ...]:
+    """Every cause that the data give weight to, the most probable first.
+
+    Parameters
+    ----------
+    posterior : Posterior
+
+    Returns
+    -------
+    tuple of Finding
+        Ends where the rest together is below `LEFT_OUT`.
+    """
+    probability: dict[Key, float] = defaultdict(float)
+    best: dict[Key, Explanation] = {}
+    for explanation in posterior.explanations:
+        for key in explanation.keys:
+            probability[key] += explanation.probability
+            best.setdefault(key, explanation)
+    swaps = _swaps(posterior)
+    ordered = sorted(probability, key=lambda key: -probability[key])
+    left = sum(probability.values())
+    found = []
+    for key in ordered:
+        if left < LEFT_OUT:
+            break
+        left -= probability[key]
+        found.append(_finding(key, best[key], probability, swaps))
+    return tuple(found)
+
+
+def _swaps(posterior: Posterior) -> dict[Key, dict[Key, float]]:
+    """For each cause, the weight of explanations that hold another cause in its stead and are otherwise the same."""
+    by_rest: dict[frozenset[Key], dict[Key, float]] = defaultdict(lambda: defaultdict(float))
+    for explanation in posterior.explanations:
+        for key in explanation.keys:
+            by_rest[explanation.keys - {key}][key] += explanation.probability
+    swaps: dict[Key, dict[Key, float]] = defaultdict(lambda: defaultdict(float))
+    for stead in by_rest.values():
+        for key in stead:
+            for other, weight in stead.items():
+                if other != key:
+                    swaps[key][other] += weight
+    return swaps
+
+
+def _finding(
+    key: Key, best: Explanation, probability: dict[Key, float], swaps: dict[Key, dict[Key, float]]
+) -> Finding:
+    """One cause with its size and rivals."""
+    index = next(i for i in best.chosen if best.frame.marks[i].key == key)
+    size = best.frame.size(best.chosen, index)
+    whole = probability[key] + sum(swaps[key].values())
+    rivals = [
+        Rival(kind=other[0], place=other[1], probability=probability[other])
+        for other, weight in swaps[key].items()
+        if weight >= RIVAL_SHARE * whole
+    ]
+    return Finding(
+        kind=key[0],
+        place=key[1],
+        probability=min(probability[key], 1.0),
+        rivals=tuple(sorted(rivals, key=lambda rival: -rival.probability)),
+        explanation=best,
+        mark=best.frame.marks[index],
+        size=size.mean,
+        sd=size.sd,
+    )

@@ -1,0 +1,254 @@
+"""Spells: the stretches of a log in which the flow state holds steady, stated or found.
+
+The log is cut where the heads against one another, the flows or the common head step; what is too short, or still moving from one
+state to the next, is left out. A slow change of all heads together is no bar: the gauges are sampled together.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from headledger.diagnosis.layout import Layout
+from headledger.diagnosis.readings import Timeline
+from headledger.plant.job import SpellKind, StatedSpell
+from headledger.statistics.series import best_cuts
+
+Array = NDArray[np.float64]
+
+STEPS = 360
+"""Pieces of time in which steps are sought: fine enough for the minutes of a visit, few enough to be quick."""
+
+LEAST_PIECES = 4
+"""Fewest pieces that make a spell."""
+
+LEAST_SAMPLES = 3
+"""Fewest rows of the log that make a found spell."""
+
+LEAST_SHARE = 0.2
+"""Shortest spell as a part of the median one: what is shorter is a transition."""
+
+MOVING_SHARE = 0.12
+"""Largest change of a flow across a spell, as a part of the greatest flow: more is no steady state. [-]"""
+
+STILL_SHARE = 0.01
+"""A metered flow below this part of the greatest counts as none. [-]"""
+
+NOTICED_TOLERANCES = 0.15
+"""Steps of a gauge smaller than this part of its tolerance need no new spell. [-]"""
+
+NOTICED_FLOW_SHARE = 0.01
+"""Steps of a flow smaller than this part of the greatest need no new spell. [-]"""
+
+SETTLING_TIME_CONSTANTS = 4.0
+"""Time constants of damping after which a gauge has followed a step to 2 %. [-]"""
+
+STILL_TOLERANCES = 1.0
+"""How far the middle of the gauges may disagree with one still head, in tolerances, where no meter says. [-]"""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Spell:
+    """A stretch of the log.
+
+    Parameters
+    ----------
+    kind : SpellKind
+    first, last : int
+        First block and the one past the last.
+    stated : StatedSpell or None
+    """
+
+    kind: SpellKind
+    first: int
+    last: int
+    stated: StatedSpell | None = None
+
+
+def find_spells(layout: Layout, timeline: Timeline) -> tuple[Spell, ...]:
+    """Spells of a log, in time order: those stated as given, the rest found.
+
+    Parameters
+    ----------
+    layout : Layout
+    timeline : Timeline
+
+    Returns
+    -------
+    tuple of Spell
+        Stretches to be ignored are left out.
+    """
+    stated = [_stated(timeline, spell) for spell in layout.job.spells]
+    taken = np.zeros(timeline.start_s.size, dtype=bool)
+    for spell in stated:
+        taken[spell.first : spell.last] = True
+    spells = [spell for spell in stated if spell.kind is not SpellKind.IGNORE and spell.last > spell.first]
+    for first, last in _free_stretches(taken):
+        spells += _found(layout, timeline, first, last)
+    return tuple(sorted(spells, key=lambda spell: spell.first))
+
+
+def _stated(timeline: Timeline, spell: StatedSpell) -> Spell:
+    """The blocks of a stated spell."""
+    first = int(np.searchsorted(timeline.middle_s, spell.start_s, side="left"))
+    last = int(np.searchsorted(timeline.middle_s, spell.end_s, side="right"))
+    return Spell(kind=spell.kind, first=first, last=last, stated=spell)
+
+
+def _free_stretches(taken: NDArray[np.bool_]) -> list[tuple[int, int]]:
+    """Stretches of blocks that no stated spell covers."""
+    edges = np.flatnonzero(np.diff(np.concatenate([[True], taken, [True]]).astype(int)))
+    return [(int(a), int(b)) for a, b in zip(edges[::2], edges[1::2], strict=True) if b > a]
+
+
+def _found(layout: Layout, timeline: Timeline, first: int, last: int) -> list[Spell]:
+    """Spells found in one stretch."""
+    pieces = _pieces(first, last)
+    signal = _signal(layout, timeline, pieces)
+    cuts = best_cuts(signal, penalty=12.0 + 4.0 * signal.shape[1])
+    spans = [(pieces[a], pieces[b]) for a, b in zip(cuts[:-1], cuts[1:], strict=True)]
+    spans = [span for span in spans if _is_settled(layout, timeline, span)]
+    if not spans:
+        return []
+    typical = float(np.median([b - a for a, b in spans]))
+    trimmed = [_trimmed(layout, timeline, span) for span in spans if span[1] - span[0] >= LEAST_SHARE * typical]
+    return [
+        Spell(kind=_kind(layout, timeline, a, b), first=a, last=b)
+        for a, b in trimmed
+        if timeline.samples[a:b].sum() >= LEAST_SAMPLES
+    ]
+
+
+def _pieces(first: int, last: int) -> NDArray[np.int64]:
+    """Bounds of at most `STEPS` pieces of about equal numbers of blocks."""
+    count = min(STEPS, last - first)
+    return np.linspace(first, last, count + 1).round().astype(np.int64)
+
+
+def _piece_means(values: Array, pieces: NDArray[np.int64]) -> Array:
+    """Means over pieces, gaps filled from the neighbours; zero where there is nothing at all."""
+    ok = np.isfinite(values)
+    sums = np.add.reduceat(np.where(ok, values, 0.0), pieces[:-1], axis=0)
+    counts = np.add.reduceat(ok.astype(float), pieces[:-1], axis=0)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        means = np.where(counts > 0, sums / counts, np.nan)
+    at = np.arange(means.shape[0])
+    for column in range(means.shape[1]):
+        known = np.isfinite(means[:, column])
+        means[:, column] = np.interp(at, at[known], means[known, column]) if known.any() else 0.0
+    return means
+
+
+def _signal(layout: Layout, timeline: Timeline, pieces: NDArray[np.int64]) -> Array:
+    """What steps are sought in, each column in units of what would be noticed: gauges against their middle, the middle, flows."""
+    gauges = layout.job.gauges
+    reading = _piece_means(timeline.reading_pa, pieces)
+    single = np.array([not gauge.is_differential for gauge in gauges])
+    level = np.median(reading, axis=0)
+    middle = np.median((reading - level)[:, single], axis=1) if single.any() else np.zeros(reading.shape[0])
+    least_tolerance = min(gauge.tolerance_at(float(level[i])) for i, gauge in enumerate(gauges))
+    columns = []
+    for index, gauge in enumerate(gauges):
+        rest = reading[:, index] - (middle if single[index] else 0.0)
+        noticed = NOTICED_TOLERANCES * gauge.tolerance_at(float(level[index]))
+        columns.append(rest / _scale(rest, noticed))
+    columns.append(middle / _scale(middle, 3.0 * NOTICED_TOLERANCES * least_tolerance))
+    for values in (timeline.flow_m3_s, timeline.speed_ratio, timeline.open_fraction):
+        means = _piece_means(values, pieces)
+        greatest = np.abs(means).max(axis=0, initial=0.0)
+        columns += [
+            means[:, run] / _scale(means[:, run], NOTICED_FLOW_SHARE * greatest[run])
+            for run in np.flatnonzero(greatest > 0.0)
+        ]
+    return np.column_stack(columns)
+
+
+def _scale(values: Array, noticed: float) -> float:
+    """Noise of a column of pieces, by the middle of its successive differences, and never below what would be noticed."""
+    if values.size < 3:
+        return max(noticed, 1e-12)
+    # 0.6745 √2: a normal difference's median size (robust scale of first differences)
+    noise = float(np.median(np.abs(np.diff(values)))) / (0.6745 * np.sqrt(2.0))
+    return max(2.0 * noise, noticed, 1e-12)
+
+
+def _is_settled(layout: Layout, timeline: Timeline, span: tuple[int, int]) -> bool:
+    """Whether no metered flow changes much across a stretch, beyond what its noise would."""
+    first, last = span
+    if last - first < 2:
+        return False
+    half = (first + last) // 2
+    for run in range(layout.run_count):
+        flow = timeline.flow_m3_s[:, run]
+        parts = [flow[first:half], flow[half:last]]
+        parts = [part[np.isfinite(part)] for part in parts]
+        if min(part.size for part in parts) == 0:
+            continue
+        greatest = _greatest_flow(timeline, run)
+        noise = float(np.sqrt(sum(part.var() / part.size for part in parts)))
+        # halves differ by half of the whole change
+        change = 2.0 * abs(float(parts[1].mean() - parts[0].mean()))
+        if change > MOVING_SHARE * greatest + 6.0 * noise:
+            return False
+    return True
+
+
+def _greatest_flow(timeline: Timeline, run: int) -> float:
+    """A run's greatest metered flow, noise aside: the 95th percentile. [m³/s]"""
+    flow = np.abs(timeline.flow_m3_s[:, run])
+    flow = flow[np.isfinite(flow)]
+    return float(np.percentile(flow, 95.0)) if flow.size else 0.0
+
+
+def _trimmed(layout: Layout, timeline: Timeline, span: tuple[int, int]) -> tuple[int, int]:
+    """A stretch less the settling after its start and the edge of its end, never more than a quarter of it at either side."""
+    first, last = span
+    settle_s = SETTLING_TIME_CONSTANTS * max((gauge.damping_s for gauge in layout.job.gauges), default=0.0)
+    settle = int(np.ceil(max(settle_s, 2.0 * timeline.width_s) / timeline.width_s))
+    piece = max(1, (last - first) // 40)
+    quarter = (last - first) // 4
+    return first + min(settle + piece, quarter), last - min(piece + 1, quarter)
+
+
+def _kind(layout: Layout, timeline: Timeline, first: int, last: int) -> SpellKind:
+    """Whether liquid moves in a stretch: by meters, else by pumps, else by whether the heads agree as at rest."""
+    metered, moving = False, False
+    for run in range(layout.run_count):
+        flow = timeline.flow_m3_s[first:last, run]
+        flow = flow[np.isfinite(flow)]
+        if flow.size:
+            metered = True
+            noise = float(flow.std() / np.sqrt(flow.size))
+            moving |= abs(float(flow.mean())) > STILL_SHARE * _greatest_flow(timeline, run) + 4.0 * noise
+    speeds = timeline.speed_ratio[first:last]
+    if np.isfinite(speeds).any() and float(np.nanmax(np.nanmean(speeds, axis=0))) > STILL_SHARE:
+        moving = True
+    if metered or moving:
+        return SpellKind.FLOWING if moving else SpellKind.STILL
+    return SpellKind.STILL if _agrees_as_still(layout, timeline, first, last) else SpellKind.FLOWING
+
+
+def _agrees_as_still(layout: Layout, timeline: Timeline, first: int, last: int) -> bool:
+    """Whether the gauges agree on one head as at rest, for all but a minority; also where nothing could flow."""
+    graph = layout.graph(tuple(True for _ in range(layout.run_count)))
+    if graph.flow.shape[1] == 0:
+        return True
+    density = layout.nominal_density_kg_m3
+    still = layout.taps.readings_pa(
+        np.zeros(len(layout.job.stations)),
+        np.zeros(layout.run_count),
+        density_kg_m3=density,
+        gravity_m_s2=layout.gravity_m_s2,
+    )
+    away = []
+    with np.errstate(invalid="ignore"):
+        said = np.array([np.nanmean(c) if np.isfinite(c).any() else np.nan for c in timeline.reading_pa[first:last].T])
+    single = [i for i, g in enumerate(layout.job.gauges) if not g.is_differential and np.isfinite(said[i])]
+    if len(single) < 2:
+        return False
+    heads = said[single] - still[single]
+    middle = float(np.median(heads))
+    away = [abs(h - middle) / layout.job.gauges[i].tolerance_at(float(said[i])) for h, i in zip(heads, single, strict=True)]
+    return float(np.median(away)) < STILL_TOLERANCES

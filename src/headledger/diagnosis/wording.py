@@ -1,0 +1,181 @@
+"""Every sentence about a finding, once: screen, text, result file and sheet say it in these words."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from headledger.diagnosis.estimate import Model
+from headledger.diagnosis.findings import Finding
+from headledger.diagnosis.result import CauseKind, Place, Verdict
+from headledger.diagnosis.verdicts import Judged
+from headledger.plant.gauges import Gauge
+from headledger.plant.job import Job
+from headledger.quantities import Unit
+
+COMPARABLE = 0.25
+"""A rival with at least this part of a cause's own probability is named in its sentence. [-]"""
+
+VERDICT_WORDS = {
+    Verdict.PASS: "its own error is inside the tolerance",
+    Verdict.FAIL: "its own error is outside the tolerance",
+    Verdict.UNRESOLVED: "the data cannot tell whether its own error is inside the tolerance",
+    Verdict.UNCHECKED: "nothing else in the data determines the pressure at this gauge",
+}
+
+KIND_WORDS = {
+    CauseKind.ZERO_SHIFT: "a zero shift",
+    CauseKind.SPAN_ERROR: "a span error",
+    CauseKind.DRIFT: "a drift",
+    CauseKind.STEP: "a step",
+    CauseKind.FROZEN: "a stuck reading",
+    CauseKind.SLUGGISH: "a slow response",
+    CauseKind.NOISY: "a noisy signal",
+    CauseKind.AT_LIMIT: "a reading at the end of its range",
+    CauseKind.WRONG_UNIT: "a wrong unit",
+    CauseKind.WRONG_REFERENCE: "a wrong pressure reference",
+    CauseKind.WRONG_ELEVATION: "a wrong elevation",
+    CauseKind.LEG_GAS: "gas in the leg",
+    CauseKind.SWAPPED: "swapped tags",
+    CauseKind.CLOCK_OFFSET: "a clock offset",
+    CauseKind.CROSSED_LINES: "crossed lines",
+    CauseKind.EQUALISED: "an open equalising valve",
+    CauseKind.ROOT: "a square root too many or too few",
+    CauseKind.BLOCKAGE: "a blockage",
+    CauseKind.LOW_LOSS: "less loss than described",
+    CauseKind.AIR_POCKET: "a trapped air pocket",
+    CauseKind.CLOSED_OFF: "a closed valve",
+    CauseKind.VAPOUR: "vapour",
+    CauseKind.FLOW_METER_ERROR: "a flow meter error",
+    CauseKind.PUMP_LIFT: "a pump lift off its curve",
+    CauseKind.DENSITY_ERROR: "a wrong density",
+    CauseKind.LEAK: "a leak",
+}
+
+
+def amount(si_value: float, unit: Unit, digits: int = 3) -> str:
+    """A value in a unit, with so many significant digits and never in exponent form."""
+    value = (si_value - unit.offset) / unit.factor
+    if value == 0.0 or not np.isfinite(value):
+        return f"{value:g} {unit.text}"
+    places = max(0, digits - 1 - int(np.floor(np.log10(abs(value)))))
+    return f"{value:.{places}f} {unit.text}"
+
+
+def percent(probability: float) -> str:
+    """A probability as it is spoken of, never as certain."""
+    if probability > 0.99:
+        return "over 99 %"
+    return "under 1 %" if probability < 0.01 else f"{100.0 * probability:.0f} %"
+
+
+def place_words(place: Place) -> str:
+    """A place in words."""
+    if place.gauges:
+        return " and ".join(place.gauges)
+    return place.gauge or place.run or place.station or "the whole job"
+
+
+def kind_words(kind: CauseKind) -> str:
+    """A kind of cause in words, with its article."""
+    return KIND_WORDS[kind]
+
+
+def cause_sentence(model: Model, finding: Finding) -> str:
+    """A finding in words: what, where, how much, and what else it may be."""
+    return _statement(model, finding) + _rival_clause(finding)
+
+
+def _rival_clause(finding: Finding) -> str:
+    """The rivals of comparable weight, in words."""
+    near = [r for r in finding.rivals if r.probability >= COMPARABLE * finding.probability][:3]
+    if not near:
+        return ""
+    named = [f"{kind_words(r.kind)} at {place_words(r.place)} ({percent(r.probability)})" for r in near]
+    named = [text.replace(" at the whole job", "") for text in named]
+    return f" Or it is {' or '.join(named)}: these readings cannot tell which."
+
+
+def _statement(model: Model, finding: Finding) -> str:
+    """The finding itself."""
+    at = place_words(finding.place)
+    size = finding.mark.reported(finding.size)
+    unit = finding.mark.unit
+    direction = "high" if size > 0.0 else "low"
+    if finding.kind is CauseKind.ZERO_SHIFT and unit:
+        return f"{at} reads {amount(abs(size), unit)} {direction} at every flow."
+    if finding.kind is CauseKind.SPAN_ERROR:
+        if finding.mark.form:
+            return f"{at} reads {size:.3g} times what it should, as if scaled to another range than its own."
+        return f"{at} reads {size:.4g} times what it should: its error grows with its reading."
+    if finding.kind is CauseKind.WRONG_UNIT:
+        noun = model.layout.job.gauge(finding.place.gauge)
+        return f"{at} looks logged in {finding.mark.form} where {noun.unit.text} is stated: {size:.4g} times the true value."
+    if finding.kind is CauseKind.WRONG_REFERENCE and unit:
+        words = "by about the barometer" if finding.mark.form == "barometer" else "by what a sealed case holds back"
+        return f"{at} reads {amount(abs(size), unit)} {direction}, {words}: gauge and absolute pressure are mixed up."
+    if finding.kind is CauseKind.WRONG_ELEVATION and unit:
+        side = "too high" if size > 0.0 else "too low"
+        return f"{at}: its elevation is stated {amount(abs(size), unit)} {side}; it reads a column of liquid {direction} at every flow."
+    if finding.kind is CauseKind.LEG_GAS and unit:
+        return f"{at} reads {amount(abs(size), unit)} {direction} at every flow: gas stands in its leg."
+    return _pipe_statement(model, finding, at, size)
+
+
+def _pipe_statement(model: Model, finding: Finding, at: str, size: float) -> str:
+    """A finding in the pipe, the meter or the liquid."""
+    if finding.kind in (CauseKind.BLOCKAGE, CauseKind.LOW_LOSS):
+        return _loss_statement(model, finding, at, size)
+    if finding.kind is CauseKind.AIR_POCKET and finding.mark.unit:
+        still = ", at rest too" if "still" in finding.mark.form else ""
+        return f"{at} drops the grade line by {amount(size, finding.mark.unit)} at every flow{still}: air is trapped on its descent."
+    if finding.kind is CauseKind.DENSITY_ERROR:
+        heavier = "heavier" if size > 1.0 else "lighter"
+        return f"The liquid is {100.0 * abs(size - 1.0):.2g} % {heavier} than stated (temperature or concentration)."
+    if finding.kind is CauseKind.FLOW_METER_ERROR:
+        return f"The flow meter of {at} reads {size:.3g} times the true flow: all losses are off with its square."
+    return f"{at}: {kind_words(finding.kind)}."
+
+
+def _loss_statement(model: Model, finding: Finding, at: str, size: float) -> str:
+    """A run's loss found and expected, at its greatest flow."""
+    run = model.layout.run_index[finding.place.run]
+    states = finding.frame.linear.states
+    state = max(states, key=lambda s: abs(float(s.flow_m3_s[run])))
+    velocity = float(state.flow_m3_s[run]) / model.layout.area_m2[run]
+    unit_pa = state.head_weight_pa_m * velocity**2 / (2.0 * model.layout.gravity_m_s2)
+    expected_pa = abs(float(state.drop_m[run])) * state.head_weight_pa_m
+    found_pa = expected_pa + size * unit_pa
+    units = model.layout.job.display
+    item = model.layout.job.runs[run].item
+    named = f"{at} ({item})" if item else at
+    more = "more" if size > 0.0 else "less"
+    return (
+        f"{named} loses {amount(abs(size) * unit_pa, units.pressure)} {more} than described at "
+        f"{amount(abs(float(state.flow_m3_s[run])), units.flow)}: {amount(found_pa, units.pressure)} found, "
+        f"{amount(expected_pa, units.pressure)} expected."
+    )
+
+
+def verdict_sentence(
+    gauge: Gauge, judged: Judged, causes: Sequence[Finding], given: Sequence[Finding], job: Job
+) -> str:
+    """Why a gauge has its verdict, and what that leans on."""
+    if not np.isfinite(judged.outside_probability):
+        return f"{gauge.tag} gave no reading in any spell."
+    unit = gauge.unit.as_difference()
+    words = VERDICT_WORDS[judged.verdict]
+    numbers = (
+        f"error {amount(judged.error_pa, unit)} ± {amount(abs(judged.u95_pa), unit)} (k = 2), "
+        f"tolerance ± {amount(judged.tolerance_pa, unit)}, {percent(judged.outside_probability)} likely outside"
+    )
+    if judged.verdict is Verdict.UNCHECKED:
+        return f"{gauge.tag}: {words}."
+    likely = [f for f in causes if f.accepted] or list(causes[:1] if causes and causes[0].probability >= 0.2 else [])
+    because = f"; most likely {kind_words(likely[0].kind)}" if likely and judged.verdict is not Verdict.PASS else ""
+    leans = ""
+    if given:
+        leans = ", given " + " and ".join(f"{kind_words(f.kind)} at {place_words(f.place)}" for f in given)
+        leans = leans.replace(" at the whole job", "")
+    return f"{gauge.tag}: {words}{leans}{because}: {numbers}."
