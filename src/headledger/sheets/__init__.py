@@ -1,1 +1,1 @@
-"""."""
+"""A result turned into something to read: text report, result file, and what both say in common."""

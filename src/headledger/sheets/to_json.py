@@ -1,0 +1,180 @@
+"""The result file: a check's result as plain JSON values, for other programs to read."""
+
+from __future__ import annotations
+
+import json
+import math
+from datetime import UTC, datetime
+from typing import Any
+
+from headledger import __version__
+from headledger.diagnosis.result import (
+    CauseFound,
+    CauseKind,
+    CheckResult,
+    GaugeFound,
+    GaugeSpell,
+    Place,
+    Rival,
+    SpellFound,
+)
+from headledger.plant.digest import Reject
+from headledger.quantities import Unit
+
+RESULT_FORMAT = 1
+
+_SIGNIFICANT_DIGITS = 6
+_SECONDS_PER_HOUR = 3600.0
+_PER_HOUR = frozenset({CauseKind.DRIFT, CauseKind.LEAK})
+_IN_SECONDS = frozenset({CauseKind.SLUGGISH, CauseKind.CLOCK_OFFSET})
+
+
+def result_to_json(result: CheckResult) -> dict[str, Any]:
+    """The result as the result file holds it: units of the job, times in UTC, null where there is no number."""
+    return {
+        "format": RESULT_FORMAT,
+        "headledger": __version__,
+        "job": {
+            "title": result.job.title,
+            "inputs": [
+                {"file": item.file, "sha256": item.sha256, "rows": item.rows, "rejected": item.rejected}
+                for item in result.inputs
+            ],
+        },
+        "spells": [_spell(spell, result.job.display.flow) for spell in result.spells],
+        "clean_probability": _number(result.clean_probability),
+        "gauges": [_gauge(gauge) for gauge in result.gauges],
+        "causes": [_cause(cause) for cause in result.causes],
+        "next_checks": [],
+        "rejects": [_reject(reject) for reject in result.rejects],
+        "remarks": list(result.remarks),
+    }
+
+
+def result_to_text(result: CheckResult) -> str:
+    """The result file as text, ending in a line feed; never holds NaN or Infinity."""
+    return json.dumps(result_to_json(result), ensure_ascii=False, indent=2, allow_nan=False) + "\n"
+
+
+def cause_size(cause: CauseFound) -> tuple[float | None, float | None, str]:
+    """Size of a cause, its u95, and their unit: empty for ratios and coefficients, per hour for what grows in time."""
+    if cause.kind in _IN_SECONDS and cause.unit is None:
+        return cause.size, cause.u95, "s"
+    if cause.unit is None:
+        return cause.size, cause.u95, ""
+    times = _SECONDS_PER_HOUR if cause.kind in _PER_HOUR else 1.0
+    suffix = "/h" if cause.kind in _PER_HOUR else ""
+    scale = times / cause.unit.factor
+    return _scaled(cause.size, scale), _scaled(cause.u95, scale), cause.unit.text + suffix
+
+
+def stamp(time_s: float | None) -> str | None:
+    """ISO 8601 in UTC with a Z, to the second or, where there is a fraction, the millisecond."""
+    if time_s is None or not math.isfinite(time_s):
+        return None
+    time = datetime.fromtimestamp(round(time_s, 3), UTC)
+    return time.isoformat(timespec="milliseconds" if time.microsecond else "seconds").replace("+00:00", "Z")
+
+
+def _number(value: float | None) -> float | None:
+    if value is None or not math.isfinite(value):
+        return None
+    return float(f"{value:.{_SIGNIFICANT_DIGITS}g}") + 0.0
+
+
+def _scaled(value: float | None, scale: float) -> float | None:
+    return None if value is None else value * scale
+
+
+def _in_unit(value_si: float | None, unit: Unit) -> float | None:
+    """A pressure, flow or length of a unit without an offset."""
+    return _number(_scaled(value_si, 1.0 / unit.factor))
+
+
+def _spell(spell: SpellFound, flow_unit: Unit) -> dict[str, Any]:
+    return {
+        "id": spell.id,
+        "kind": spell.kind.value,
+        "start": stamp(spell.start_s),
+        "end": stamp(spell.end_s),
+        "samples": spell.samples,
+        "flows": [
+            {
+                "run": flow.run,
+                "value": _in_unit(flow.flow_m3_s, flow_unit),
+                "u95": _in_unit(flow.u95_m3_s, flow_unit),
+                "unit": flow_unit.text,
+            }
+            for flow in spell.flows
+        ],
+    }
+
+
+def _gauge(gauge: GaugeFound) -> dict[str, Any]:
+    return {
+        "tag": gauge.tag,
+        "station": gauge.station,
+        "unit": gauge.unit.text,
+        "verdict": gauge.verdict.value,
+        "outside_probability": _number(gauge.outside_probability),
+        "error": _in_unit(gauge.error_pa, gauge.unit),
+        "u95": _in_unit(gauge.u95_pa, gauge.unit),
+        "tolerance": _in_unit(gauge.tolerance_pa, gauge.unit),
+        "spells": [_gauge_spell(spell, gauge.unit) for spell in gauge.spells],
+        "causes": list(gauge.causes),
+        "given": list(gauge.given),
+        "why": gauge.why,
+    }
+
+
+def _gauge_spell(spell: GaugeSpell, unit: Unit) -> dict[str, Any]:
+    return {
+        "id": spell.id,
+        "reading": _in_unit(spell.reading_pa, unit),
+        "expected": _in_unit(spell.expected_pa, unit),
+        "u95": _in_unit(spell.u95_pa, unit),
+    }
+
+
+def _cause(cause: CauseFound) -> dict[str, Any]:
+    size, u95, unit_text = cause_size(cause)
+    return {
+        "kind": cause.kind.value,
+        "at": _place(cause.place),
+        "size": _number(size),
+        "u95": _number(u95),
+        "unit": unit_text,
+        "start": stamp(cause.start_s),
+        "probability": _number(cause.probability),
+        "accepted": cause.accepted,
+        "rivals": [_rival(rival) for rival in cause.rivals],
+        "says": cause.says,
+    }
+
+
+def _rival(rival: Rival) -> dict[str, Any]:
+    return {
+        "kind": rival.kind.value,
+        "at": _place(rival.place),
+        "probability": _number(rival.probability),
+    }
+
+
+def _place(place: Place) -> dict[str, Any]:
+    named: dict[str, Any] = {
+        "gauge": place.gauge,
+        "gauges": list(place.gauges),
+        "run": place.run,
+        "station": place.station,
+    }
+    return {key: value for key, value in named.items() if value}
+
+
+def _reject(reject: Reject) -> dict[str, Any]:
+    return {
+        "file": reject.file,
+        "line": reject.line,
+        "column": reject.column,
+        "text": reject.text,
+        "why": reject.why,
+    }

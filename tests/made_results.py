@@ -1,0 +1,173 @@
+"""Results made by hand, so that reports and screens are tested without a log or a check."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from pathlib import Path
+
+from headledger.diagnosis.result import (
+    CauseFound,
+    CauseKind,
+    CheckResult,
+    FlowFound,
+    GaugeFound,
+    GaugeSpell,
+    InputFile,
+    Place,
+    Rival,
+    SpellFound,
+    Verdict,
+)
+from headledger.plant.digest import Reject
+from headledger.plant.gauges import ErrorLimit, Gauge
+from headledger.plant.job import Job, SpellKind
+from headledger.plant.runs import Run
+from headledger.plant.stations import Station
+from headledger.quantities import Dimension, PressureKind, Unit
+
+BARG = Unit("barg", Dimension.PRESSURE, 1e5, kind=PressureKind.GAUGE)
+BAR = Unit("bar", Dimension.PRESSURE, 1e5, kind=PressureKind.DIFFERENCE)
+PSIG = Unit("psig", Dimension.PRESSURE, 6894.757293168361, kind=PressureKind.GAUGE)
+METRE = Unit("m", Dimension.LENGTH, 1.0)
+# 2026-03-02 08:00 UTC
+EIGHT_O_CLOCK_S = 1_772_438_400.0
+
+ZERO_SHIFT = CauseFound(
+    kind=CauseKind.ZERO_SHIFT,
+    place=Place(gauge="PT-3"),
+    size=21_000.0,
+    u95=3_000.0,
+    unit=BAR,
+    probability=0.96,
+    accepted=True,
+    rivals=(Rival(kind=CauseKind.WRONG_ELEVATION, place=Place(gauge="PT-3"), probability=0.03),),
+    says="PT-3 reads 0.21 bar high at every flow.",
+)
+BLOCKAGE = CauseFound(
+    kind=CauseKind.BLOCKAGE,
+    place=Place(run="R2"),
+    size=14.2,
+    u95=5.1,
+    unit=None,
+    probability=0.55,
+    accepted=False,
+    rivals=(Rival(kind=CauseKind.SPAN_ERROR, place=Place(gauge="PT-4"), probability=0.42),),
+    says="Run R2 loses 0.31 bar more than the 0.12 bar expected at 36 m3/h.",
+)
+
+
+def made_gauge(tag: str, station: str, run: str) -> Gauge:
+    """A 0 to 10 bar gauge of class 0.6."""
+    limit = ErrorLimit(limit_pa=6_000.0, outer_limit_pa=6_000.0, text="0.6 % span")
+    return Gauge(
+        tag=tag,
+        station=station,
+        run=run,
+        unit=BARG,
+        range_low_pa=0.0,
+        range_high_pa=1e6,
+        accuracy=limit,
+        tolerance=limit,
+        column=tag,
+    )
+
+
+def made_job() -> Job:
+    """Four stations in a row, a gauge at each, and one more at the last."""
+    stations = tuple(Station(name=f"S{i}", elevation_m=3.0 * i, elevation_sd_m=0.01) for i in range(1, 5))
+    runs = tuple(Run(name=f"R{i}", start=f"S{i}", end=f"S{i + 1}", bore_m=0.1, length_m=40.0) for i in range(1, 4))
+    gauges = tuple(made_gauge(f"PT-{i}", f"S{min(i, 4)}", f"R{min(i, 3)}") for i in range(1, 6))
+    return Job(
+        folder=Path("riser"),
+        title="Block C riser [east]",
+        site_name="Quay 4",
+        stations=stations,
+        runs=runs,
+        gauges=gauges,
+    )
+
+
+def made_spell(number: int, kind: SpellKind, flow_m3_h: float) -> SpellFound:
+    """A quarter of an hour of 900 rows, all three runs at one flow."""
+    start_s = EIGHT_O_CLOCK_S + 1800.0 * (number - 1)
+    flows = tuple(
+        FlowFound(run=f"R{i}", flow_m3_s=flow_m3_h / 3600.0, u95_m3_s=0.02 * flow_m3_h / 3600.0) for i in range(1, 4)
+    )
+    return SpellFound(id=number, kind=kind, start_s=start_s, end_s=start_s + 900.0, samples=900, flows=flows)
+
+
+def found_gauge(tag: str, station: str, verdict: Verdict, **changes: object) -> GaugeFound:
+    """A gauge of 3.2 bar in both spells, 0.005 ± 0.03 bar off; `changes` replace fields."""
+    spells = tuple(GaugeSpell(id=i, reading_pa=320_500.0, expected_pa=320_000.0, u95_pa=3_000.0) for i in (1, 2))
+    gauge = GaugeFound(
+        tag=tag,
+        station=station,
+        unit=BARG,
+        verdict=verdict,
+        outside_probability=0.004,
+        error_pa=500.0,
+        u95_pa=3_000.0,
+        tolerance_pa=6_000.0,
+        spells=spells,
+    )
+    return replace(gauge, **changes)  # type: ignore[arg-type]
+
+
+def sound_result() -> CheckResult:
+    """Every gauge passes, no cause, nothing rejected."""
+    return CheckResult(
+        job=made_job(),
+        inputs=(InputFile(file="log.csv", sha256="ab" * 32, rows=5400, rejected=0),),
+        spells=(made_spell(1, SpellKind.STILL, 0.0), made_spell(2, SpellKind.FLOWING, 36.0)),
+        clean_probability=0.97,
+        gauges=tuple(found_gauge(f"PT-{i}", f"S{min(i, 4)}", Verdict.PASS) for i in range(1, 6)),
+        causes=(),
+    )
+
+
+def troubled_result() -> CheckResult:
+    """PT-3 fails by a zero shift, PT-4 and run R2 are not told apart, PT-5 is unchecked, one cell rejected."""
+    failed = found_gauge(
+        "PT-3",
+        "S3",
+        Verdict.FAIL,
+        outside_probability=0.994,
+        error_pa=21_000.0,
+        causes=(0,),
+        spells=(
+            GaugeSpell(id=1, reading_pa=341_000.0, expected_pa=320_000.0, u95_pa=3_000.0),
+            GaugeSpell(id=2, reading_pa=309_000.0, expected_pa=288_000.0, u95_pa=4_000.0),
+        ),
+        why="PT-3 is 0.21 bar high in both spells, more than three times its tolerance of 0.06 bar.",
+    )
+    open_question = found_gauge(
+        "PT-4",
+        "S4",
+        Verdict.UNRESOLVED,
+        outside_probability=0.43,
+        error_pa=-11_000.0,
+        u95_pa=26_000.0,
+        given=(1,),
+        why="PT-4 is low only while the liquid flows: by its own slope, or by a blockage in R2.",
+    )
+    alone = found_gauge(
+        "PT-5",
+        "S4",
+        Verdict.UNCHECKED,
+        outside_probability=0.5,
+        error_pa=float("nan"),
+        u95_pa=float("nan"),
+        spells=(GaugeSpell(id=1, reading_pa=310_000.0, expected_pa=None, u95_pa=None),),
+        why="Nothing else in the data determines the pressure at PT-5.",
+    )
+    sound = sound_result()
+    return replace(
+        sound,
+        inputs=(InputFile(file="log.csv", sha256="ab" * 32, rows=5400, rejected=1),),
+        clean_probability=0.004,
+        gauges=(*sound.gauges[:2], failed, open_question, alone),
+        causes=(ZERO_SHIFT, BLOCKAGE),
+        rejects=(Reject(file="log.csv", line=120, column="PT-3", text="BAD [x]", why="not a number"),),
+        reject_count=1,
+        remarks=("S1 and S4 were taken as open: one run ends there.",),
+    )
