@@ -82,6 +82,10 @@ class Whitened:
         """Posterior mean of the shared inputs with no cause present, in units of their prior standard deviations."""
         return self.shared.T @ self.residual
 
+    def shared_covariance(self) -> Array:
+        """Posterior covariance of the shared inputs with no cause present, in units of their prior standard deviations."""
+        return np.eye(self.shared.shape[1]) - self.shared.T @ self.shared
+
 
 def _eliminate(group: Group) -> tuple[Array, Array, Array, float]:
     """Residual, operator and shared derivatives of one group with its own unknowns marginalised, and its log determinant."""
