@@ -1,0 +1,248 @@
+"""Density, viscosity, vapour pressure and bulk modulus of the liquids that the trade pipes."""
+
+from __future__ import annotations
+
+import json
+from dataclasses import dataclass
+from functools import lru_cache
+from importlib.resources import files
+from typing import Any
+
+import numpy as np
+from numpy.polynomial import chebyshev
+
+from headledger.errors import QuantityError
+
+WATER_MOLAR_MASS = 18.015268
+GLYCOL_MOLAR_MASS = {"ethylene-glycol": 62.068, "propylene-glycol": 76.095}
+BY_MASS = {"ethylene-glycol": "MEG", "propylene-glycol": "MPG"}
+BY_VOLUME = {"ethylene-glycol": "AEG", "propylene-glycol": "APG"}
+GLYCOL_DENSITY_KG_M3 = {"ethylene-glycol": 1113.0, "propylene-glycol": 1036.0}
+"""Of the pure glycols at 20 °C, to turn a volume fraction into a mass fraction for the vapour pressure (from memory)."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class LiquidProperties:
+    """Properties of a liquid at one temperature and about one atmosphere.
+
+    Parameters
+    ----------
+    density_kg_m3, viscosity_pa_s : float
+        [kg/m³], [Pa s]
+    vapour_pressure_pa : float
+        [Pa absolute]
+    bulk_modulus_pa : float
+        Isothermal. [Pa]
+    """
+
+    density_kg_m3: float
+    viscosity_pa_s: float
+    vapour_pressure_pa: float
+    bulk_modulus_pa: float
+
+
+@lru_cache(maxsize=1)
+def _tables() -> dict[str, Any]:
+    """Chebyshev coefficients, as shipped."""
+    text = files("headledger.physics").joinpath("data/liquids.json").read_text(encoding="utf-8")
+    tables: dict[str, Any] = json.loads(text)
+    return tables
+
+
+def _scaled(value: float, limits: list[float]) -> float:
+    """A value on −1 … 1 of its range."""
+    return 2.0 * (value - limits[0]) / (limits[1] - limits[0]) - 1.0
+
+
+def _demand(name: str, value: float, low: float, high: float, unit: str, shift: float = 0.0) -> None:
+    """Refuse a value that a table does not hold."""
+    if not low - 1e-6 <= value <= high + 1e-6:
+        raise QuantityError(
+            f"{name} is outside the table of this liquid",
+            f"{value - shift:.4g} {unit}",
+            f"{low - shift:.4g} to {high - shift:.4g} {unit}",
+        )
+
+
+def water_properties(temperature_k: float) -> LiquidProperties:
+    """Liquid water at 101.325 kPa, or just above saturation where it would boil.
+
+    Parameters
+    ----------
+    temperature_k : float
+        0.01 to 180 °C. [K]
+
+    Returns
+    -------
+    LiquidProperties
+
+    Raises
+    ------
+    QuantityError
+        Outside that range.
+
+    References
+    ----------
+    IAPWS R6-95(2018) for density, saturation and compressibility; IAPWS R12-08 for viscosity.
+    """
+    table = _tables()["water"]
+    low, high = table["range_k"]
+    # 0 °C lies 0.01 K below the table, where nothing changes
+    temperature_k = low if low - 0.011 <= temperature_k < low else temperature_k
+    _demand("temperature", temperature_k, low, high, "°C", 273.15)
+    at = _scaled(temperature_k, table["range_k"])
+
+    def value(name: str) -> float:
+        return float(chebyshev.chebval(at, table[name]))
+
+    return LiquidProperties(
+        density_kg_m3=value("density"),
+        viscosity_pa_s=float(np.exp(value("log_viscosity"))),
+        vapour_pressure_pa=float(np.exp(value("log_vapour_pressure"))),
+        bulk_modulus_pa=float(np.exp(value("log_bulk_modulus"))),
+    )
+
+
+def seawater_properties(temperature_k: float, salinity_g_kg: float) -> LiquidProperties:
+    """Seawater at atmospheric pressure.
+
+    Parameters
+    ----------
+    temperature_k : float
+        0 to 40 °C. [K]
+    salinity_g_kg : float
+        Absolute salinity, 0 to 42. [g/kg]
+
+    Returns
+    -------
+    LiquidProperties
+        Bulk modulus is water's.
+
+    Raises
+    ------
+    QuantityError
+        Outside those ranges.
+
+    References
+    ----------
+    IOC, SCOR and IAPSO (2010), TEOS-10, for density; Sharqawy, Lienhard & Zubair (2010) for viscosity. Vapour pressure: water's
+    less 0.537 parts per thousand for each g/kg (Raoult's law for sea salt).
+    """
+    table = _tables()["seawater"]
+    _demand("temperature", temperature_k, *table["range_k"], "°C", 273.15)
+    _demand("salinity", salinity_g_kg, *table["salinity_g_kg"], "g/kg")
+    x, y = _scaled(salinity_g_kg, table["salinity_g_kg"]), _scaled(temperature_k, table["range_k"])
+    water = water_properties(temperature_k)
+    return LiquidProperties(
+        density_kg_m3=float(chebyshev.chebval2d(x, y, np.array(table["density"]))),
+        viscosity_pa_s=float(np.exp(chebyshev.chebval2d(x, y, np.array(table["log_viscosity"])))),
+        vapour_pressure_pa=water.vapour_pressure_pa * (1.0 - 0.537e-3 * salinity_g_kg),
+        bulk_modulus_pa=water.bulk_modulus_pa,
+    )
+
+
+def glycol_properties(
+    kind: str, temperature_k: float, concentration_fraction: float, *, by_volume: bool = False
+) -> LiquidProperties:
+    """A mixture of water and ethylene or propylene glycol.
+
+    Parameters
+    ----------
+    kind : str
+        ``ethylene-glycol`` or ``propylene-glycol``.
+    temperature_k : float
+        From its freezing point to 100 °C. [K]
+    concentration_fraction : float
+        Of glycol, 0 to 0.6. [-]
+    by_volume : bool
+        Whether that is a volume fraction; by mass otherwise.
+
+    Returns
+    -------
+    LiquidProperties
+        Vapour pressure is water's times its mole fraction; bulk modulus is water's.
+
+    Raises
+    ------
+    QuantityError
+        Outside those ranges, or below the freezing point.
+
+    References
+    ----------
+    Melinder (2010), Properties of Secondary Working Fluids, by mass; ASHRAE Handbook Fundamentals (2001) by volume; both as CoolProp
+    has them.
+    """
+    table = _tables()[(BY_VOLUME if by_volume else BY_MASS)[kind]]
+    _demand("concentration", 100.0 * concentration_fraction, *(100.0 * f for f in table["fractions"]), "%")
+    freezing = float(
+        np.interp(concentration_fraction, np.linspace(*table["fractions"], len(table["freezing_k"])), table["freezing_k"])
+    )
+    _demand("temperature", temperature_k, max(freezing, table["range_k"][0]), table["range_k"][1], "°C", 273.15)
+    x, y = _scaled(concentration_fraction, table["fractions"]), _scaled(temperature_k, table["range_k"])
+    water = water_properties(max(temperature_k, 273.16))
+    mass = concentration_fraction
+    if by_volume:
+        pure = GLYCOL_DENSITY_KG_M3[kind] * concentration_fraction
+        mass = pure / (pure + 998.2 * (1.0 - concentration_fraction))
+    moles = (1.0 - mass) / WATER_MOLAR_MASS
+    return LiquidProperties(
+        density_kg_m3=float(chebyshev.chebval2d(x, y, np.array(table["density"]))),
+        viscosity_pa_s=float(np.exp(chebyshev.chebval2d(x, y, np.array(table["log_viscosity"])))),
+        vapour_pressure_pa=water.vapour_pressure_pa * moles / (moles + mass / GLYCOL_MOLAR_MASS[kind]),
+        bulk_modulus_pa=water.bulk_modulus_pa,
+    )
+
+
+def liquid_properties(
+    *,
+    kind: str,
+    temperature_k: float,
+    concentration_fraction: float | None = None,
+    by_volume: bool = False,
+    salinity_g_kg: float | None = None,
+    density_kg_m3: float | None = None,
+    viscosity_pa_s: float | None = None,
+    vapour_pressure_pa: float | None = None,
+) -> LiquidProperties:
+    """Properties of a liquid by its kind.
+
+    Parameters
+    ----------
+    kind : str
+        ``water``, ``seawater``, ``ethylene-glycol``, ``propylene-glycol`` or ``other``.
+    temperature_k : float
+        [K]
+    concentration_fraction : float, optional
+        Of a glycol. [-]
+    by_volume : bool
+    salinity_g_kg : float, optional
+        Of seawater; 35 if not given. [g/kg]
+    density_kg_m3, viscosity_pa_s, vapour_pressure_pa : float, optional
+        Of ``other``; water's viscosity and vapour pressure stand in where they are not given. [kg/m³], [Pa s], [Pa absolute]
+
+    Returns
+    -------
+    LiquidProperties
+
+    Raises
+    ------
+    QuantityError
+        Unknown kind, or a value outside the table.
+    """
+    if kind == "water":
+        return water_properties(temperature_k)
+    if kind == "seawater":
+        return seawater_properties(temperature_k, 35.0 if salinity_g_kg is None else salinity_g_kg)
+    if kind in BY_MASS:
+        return glycol_properties(kind, temperature_k, concentration_fraction or 0.0, by_volume=by_volume)
+    if kind != "other":
+        raise QuantityError("unknown liquid", kind, "water, seawater, ethylene-glycol, propylene-glycol or other")
+    if density_kg_m3 is None:
+        raise QuantityError("a liquid of kind other needs its density", "", 'density = "870 kg/m3"')
+    water = water_properties(min(max(temperature_k, 273.16), 453.15))
+    return LiquidProperties(
+        density_kg_m3=density_kg_m3,
+        viscosity_pa_s=water.viscosity_pa_s if viscosity_pa_s is None else viscosity_pa_s,
+        vapour_pressure_pa=water.vapour_pressure_pa if vapour_pressure_pa is None else vapour_pressure_pa,
+        bulk_modulus_pa=water.bulk_modulus_pa,
+    )
