@@ -8,10 +8,11 @@ from pathlib import Path
 
 import numpy as np
 
+from headledger.diagnosis.averages import spell_means
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import Finding, list_findings
 from headledger.diagnosis.layout import Layout
-from headledger.diagnosis.means import SpellMeans, spell_means
+from headledger.diagnosis.means import SpellMeans
 from headledger.diagnosis.readings import Timeline, read_timeline
 from headledger.diagnosis.result import (
     CauseFound,

@@ -30,7 +30,7 @@ FREE_VELOCITY_M_S = 1.5
 LOOP_NOISE_M = 1e-5
 """How exactly a loop must close: far below any reading's noise, far above rounding. [m]"""
 
-LEAST_FLOW_NOISE_FRACTION = 1e-4
+LEAST_FLOW_NOISE_FRACTION = 1e-6
 """Floor of a metered flow's noise, so that a stated flow without noise stays solvable. [-]"""
 
 
