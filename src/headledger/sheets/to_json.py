@@ -51,9 +51,9 @@ def result_to_json(result: CheckResult) -> dict[str, Any]:
     }
 
 
-def result_to_text(result: CheckResult) -> str:
+def result_to_text(result: CheckResult, *, ascii_only: bool = False) -> str:
     """The result file as text, ending in a line feed; never holds NaN or Infinity."""
-    return json.dumps(result_to_json(result), ensure_ascii=False, indent=2, allow_nan=False) + "\n"
+    return json.dumps(result_to_json(result), ensure_ascii=ascii_only, indent=2, allow_nan=False) + "\n"
 
 
 def cause_size(cause: CauseFound) -> tuple[float | None, float | None, str]:
@@ -65,7 +65,7 @@ def cause_size(cause: CauseFound) -> tuple[float | None, float | None, str]:
     times = _SECONDS_PER_HOUR if cause.kind in _PER_HOUR else 1.0
     suffix = "/h" if cause.kind in _PER_HOUR else ""
     scale = times / cause.unit.factor
-    return _scaled(cause.size, scale), _scaled(cause.u95, scale), cause.unit.text + suffix
+    return _scaled(cause.size, scale), _scaled(cause.u95, scale), cause.unit.as_difference().text + suffix
 
 
 def stamp(time_s: float | None) -> str | None:

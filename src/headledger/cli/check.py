@@ -1,0 +1,89 @@
+"""``headledger check``: the batch answer, as text or as a result file."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import click
+
+from headledger.cli.exit_codes import ExitCode
+from headledger.cli.samples import job_folder
+from headledger.cli.streams import ProgressLine, result_stream, say
+
+if TYPE_CHECKING:
+    from headledger.diagnosis.result import CheckResult
+
+_TO_STDOUT = "-"
+
+
+@click.command()
+@click.argument("job")
+@click.option("--json", "json_path", metavar="PATH", help="Write the result file to PATH; - writes it to stdout alone.")
+@click.option("--no-color", is_flag=True, help="Print without colour.")
+@click.option("-q", "--quiet", is_flag=True, help="No report and no progress: the exit status is the answer.")
+def check(job: str, json_path: str | None, no_color: bool, quiet: bool) -> int:
+    """Say which gauges of JOB can be believed.
+
+    Exit status: 0 nothing is wrong; 1 something is; 2 the job or its logs cannot be used; 3 nothing can be checked;
+    70 a fault of headledger; 130 interrupted.
+    """
+    folder = job_folder(job)
+    _refuse_bad_target(json_path)
+    from headledger.diagnosis.check import check_folder
+
+    with ProgressLine(sys.stderr, shown=not quiet) as progress:
+        result = check_folder(folder, on_progress=progress)
+    if json_path:
+        _write_json(result, json_path)
+    if not quiet and json_path != _TO_STDOUT:
+        from headledger.sheets.text import write_report
+
+        with result_stream() as stream:
+            write_report(result, stream, color=not no_color)
+    _name_unchecked(result)
+    return exit_code_of(result)
+
+
+def exit_code_of(result: CheckResult) -> ExitCode:
+    """The exit status that a result stands for."""
+    from headledger.sheets.outcome import Outcome, outcome_of
+
+    return {
+        Outcome.SOUND: ExitCode.SOUND,
+        Outcome.TROUBLE: ExitCode.TROUBLE,
+        Outcome.NOTHING_CHECKED: ExitCode.NOTHING_CHECKED,
+    }[outcome_of(result)]
+
+
+def _refuse_bad_target(json_path: str | None) -> None:
+    """Before the work, not after it: a result file that cannot be written."""
+    if json_path in (None, _TO_STDOUT):
+        return
+    path = Path(json_path)
+    if path.is_dir():
+        raise click.BadParameter(f"{path} is a folder, expected a file to write.", param_hint="--json")
+    if not path.parent.is_dir():
+        raise click.BadParameter(f"{path.parent} is no folder, expected one that exists.", param_hint="--json")
+
+
+def _write_json(result: CheckResult, json_path: str) -> None:
+    from headledger.sheets.to_json import result_to_text
+
+    if json_path == _TO_STDOUT:
+        with result_stream() as stream:
+            speaks_utf_8 = (stream.encoding or "").lower().replace("-", "") == "utf8"
+            stream.write(result_to_text(result, ascii_only=not speaks_utf_8))
+        return
+    try:
+        # A file name that is no UTF-8 becomes an escape, which JSON knows too.
+        Path(json_path).write_text(result_to_text(result), encoding="utf-8", errors="backslashreplace")
+    except OSError as error:
+        raise click.FileError(json_path, hint=error.strerror or str(error)) from error
+
+
+def _name_unchecked(result: CheckResult) -> None:
+    tags = [gauge.tag for gauge in result.gauges if gauge.verdict.value == "unchecked"]
+    if tags:
+        say(f"Not checked, since nothing else in the data determines the pressure there: {', '.join(tags)}.")

@@ -1,0 +1,33 @@
+"""``headledger open``: the screen."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+
+import click
+
+from headledger.cli.samples import JOB_FILE, job_folder, sample_names
+
+
+@click.command("open", short_help="Look at JOB on the screen of the terminal.")
+@click.argument("job", required=False)
+def open_job(job: str | None) -> int:
+    """Look at JOB on the screen of the terminal; without JOB, at the folder you are in."""
+    folder = job_folder(job) if job is not None else _folder_here()
+    if not (sys.stdin.isatty() and sys.stdout.isatty()):
+        raise click.UsageError("`open` needs a terminal; `headledger check JOB` prints the same findings as text.")
+    from headledger.tui.app import HeadledgerApp
+
+    app = HeadledgerApp(folder)
+    app.run()
+    return app.return_code or 0
+
+
+def _folder_here() -> Path:
+    here = Path.cwd()
+    if (here / JOB_FILE).is_file():
+        return here
+    raise click.UsageError(
+        f"There is no {JOB_FILE} in this folder; name a job folder, or one of the samples: {', '.join(sample_names())}."
+    )
