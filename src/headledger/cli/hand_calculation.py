@@ -103,9 +103,9 @@ def read_hand_calculation(given: Mapping[str, Any]) -> HandCalculation:
     liquid = _liquid(options)
     pressure_unit, first_pressure_pa = _first_pressure(options)
     length_unit = _length_unit(options)
-    run_losses = _run_losses(options, bore_m, flow_m3_s)
+    run_losses = _run_losses(options, bore_m)
     drop_pa = options.si("drop", Dimension.PRESSURE) or 0.0
-    _demand_bores(options, flow_m3_s, bore_m)
+    _demand_bore(options, flow_m3_s)
     options.raise_problems()
     assert liquid is not None
     assert pressure_unit is not None
@@ -196,7 +196,7 @@ def _roughness_m(options: QuantityOptions) -> float | None:
     return CLEAN_STEEL_ROUGHNESS_M if stated_m is None else stated_m
 
 
-def _run_losses(options: QuantityOptions, bore_m: float | None, flow_m3_s: float) -> list[tuple[str, RunLoss]]:
+def _run_losses(options: QuantityOptions, bore_m: float | None) -> list[tuple[str, RunLoss]]:
     """Each loss alone, so that each has its own line."""
     # The bore of a valve alone does not enter its loss.
     bore = bore_m or 1.0
@@ -212,15 +212,14 @@ def _run_losses(options: QuantityOptions, bore_m: float | None, flow_m3_s: float
         losses.append((f"Fittings, K {fittings_k:g}", RunLoss(bore_m=bore, fittings_k=fittings_k)))
     if valve_kv:
         losses.append((f"Valve, Kv {options.text('kv')}", RunLoss(bore_m=bore, valve_kv_m3_s=valve_kv)))
-    if flow_m3_s and bore_m is None and (length_m or fittings_k):
-        options.refuse("bore", "is missing", "", "the inside diameter, since the loss depends on it")
     return losses
 
 
-def _demand_bores(options: QuantityOptions, flow_m3_s: float, bore_m: float | None) -> None:
-    if not flow_m3_s or bore_m is not None or options.text("bore") is not None:
-        return
-    if options.text("from_bore") is None or options.text("to_bore") is None:
+def _demand_bore(options: QuantityOptions, flow_m3_s: float) -> None:
+    """Without a bore, moving liquid has neither a pipe loss nor, at a point that states no own bore, a velocity head."""
+    bound_to_bore = any(options.text(name) is not None for name in ("length", "fittings_k"))
+    both_points_stated = all(options.text(name) is not None for name in ("from_bore", "to_bore"))
+    if flow_m3_s and options.text("bore") is None and (bound_to_bore or not both_points_stated):
         options.refuse("bore", "is missing", "", "the inside diameter, since liquid flows")
 
 
