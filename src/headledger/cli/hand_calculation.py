@@ -216,7 +216,7 @@ def _run_losses(options: QuantityOptions, bore_m: float | None) -> list[tuple[st
 
 
 def _demand_bore(options: QuantityOptions, flow_m3_s: float) -> None:
-    """Without a bore, moving liquid has neither a pipe loss nor, at a point that states no own bore, a velocity head."""
+    """Moving liquid has no pipe loss, and at a point without its own bore no velocity head, until the bore is known."""
     bound_to_bore = any(options.text(name) is not None for name in ("length", "fittings_k"))
     both_points_stated = all(options.text(name) is not None for name in ("from_bore", "to_bore"))
     if flow_m3_s and options.text("bore") is None and (bound_to_bore or not both_points_stated):
