@@ -1,0 +1,343 @@
+"""The screen by its behaviour: what stands on it, what keys do, how errors and stops end."""
+
+from __future__ import annotations
+
+import re
+import threading
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+from rich.text import Text
+from textual.pilot import Pilot
+from textual.widgets import Label, Static
+
+from headledger.diagnosis.result import CheckResult, Verdict
+from headledger.errors import JobError, NetworkError, NothingToCheckError, Problem
+from headledger.tui.app import FolderCheck, HeadledgerApp
+from headledger.tui.ending import Ending
+from headledger.tui.screens.ended import EndedScreen
+from headledger.tui.screens.findings import FindingsScreen
+from headledger.tui.screens.working import WorkingScreen
+from headledger.tui.widgets.answers import Answers
+from headledger.tui.widgets.findings_list import FindingsList
+from headledger.tui.widgets.gauge_detail import GaugeDetail
+from headledger.tui.widgets.gauge_table import GaugeTable
+from tests.made_results import found_gauge
+
+SMALL, LARGE = (80, 24), (160, 48)
+
+
+def answers_with(result: CheckResult) -> FolderCheck:
+    def check(folder: Path, *, on_progress: Callable[[str, float], None], should_stop: Callable[[], bool]):
+        return result
+
+    return check
+
+
+def raises(error: Exception) -> FolderCheck:
+    def check(folder: Path, *, on_progress: Callable[[str, float], None], should_stop: Callable[[], bool]):
+        raise error
+
+    return check
+
+
+class HeldCheck:
+    """A check that stands at half way until it is let go, or is asked to stop and looks."""
+
+    def __init__(self, result: CheckResult) -> None:
+        self._result = result
+        self.let_go = threading.Event()
+        self.at_half = threading.Event()
+        self.runs = 0
+
+    def __call__(
+        self, folder: Path, *, on_progress: Callable[[str, float], None], should_stop: Callable[[], bool]
+    ) -> CheckResult:
+        self.runs += 1
+        on_progress("weighing causes", 0.5)
+        self.at_half.set()
+        while not self.let_go.wait(0.005) and not should_stop():
+            pass
+        return self._result
+
+
+@contextmanager
+def held(result: CheckResult) -> Iterator[HeldCheck]:
+    """A held check that is let go whatever happens, so that no test hangs."""
+    check = HeldCheck(result)
+    try:
+        yield check
+    finally:
+        check.let_go.set()
+
+
+async def settled(pilot: Pilot[None]) -> None:
+    await pilot.app.workers.wait_for_complete()
+    await pilot.pause()
+
+
+def shown(app: HeadledgerApp, selector: str) -> str:
+    return "\n".join(str(widget.render()) for widget in app.screen.query(selector).results(Static))
+
+
+def table_rows(app: HeadledgerApp) -> list[list[str]]:
+    table = app.screen.query_one(GaugeTable)
+    return [[str(cell) for cell in table.get_row_at(row)] for row in range(table.row_count)]
+
+
+@pytest.mark.parametrize("size", [SMALL, LARGE])
+async def test_findings_screen_shows_answers_gauges_and_findings(troubled_result: CheckResult, size: tuple[int, int]):
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=size) as pilot:
+        await settled(pilot)
+        assert isinstance(app.screen, FindingsScreen)
+        assert shown(app, ".question").splitlines() == [
+            "Anything wrong?", "Where?", "Gauge or pipe?", "How sure?", "What next?",
+        ]  # fmt: skip
+        assert "PT-3 reads 0.21 bar high at every flow." in shown(app, ".answer")
+        assert [row[:2] for row in table_rows(app)] == [
+            ["▲ fail", "PT-3"],
+            ["? unresolved", "PT-4"],
+            ["– unchecked", "PT-5"],
+            ["✓ pass", "PT-1"],
+            ["✓ pass", "PT-2"],
+        ]
+        assert "Or: span-error at PT-4 (42 %)" in shown(app, ".finding")
+        assert app.ending is Ending.FOUND
+
+
+@pytest.mark.parametrize("size", [SMALL, LARGE])
+async def test_every_part_of_the_screen_has_room(troubled_result: CheckResult, size: tuple[int, int]):
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=size) as pilot:
+        await settled(pilot)
+        screen = app.screen.region
+        for selector in ("TitleLine", "Answers", "GaugeTable", "#aside", "#caution", "Footer"):
+            region = app.screen.query_one(selector).region
+            assert region.area > 0, selector
+            assert screen.contains_region(region), selector
+        assert app.screen.query_one(GaugeTable).region.height >= 7
+        assert app.screen.query_one("#aside").region.height >= 6
+
+
+async def test_findings_stand_beside_the_gauges_where_there_is_width(troubled_result: CheckResult):
+    for size, beside in ((SMALL, False), (LARGE, True)):
+        app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+        async with app.run_test(size=size) as pilot:
+            await settled(pilot)
+            table, aside = app.screen.query_one(GaugeTable).region, app.screen.query_one("#aside").region
+            assert (aside.x >= table.right) is beside
+            assert (aside.y >= table.bottom) is not beside
+
+
+async def test_arrow_keys_show_the_gauge_under_the_cursor(troubled_result: CheckResult):
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        assert "PT-3 at S3   ▲ fail" in shown(app, "GaugeDetail")
+        assert "1 still    3.410     3.200  0.030  barg" in shown(app, "GaugeDetail")
+        await pilot.press("down", "down")
+        detail = shown(app, "GaugeDetail")
+        assert "PT-5 at S4   – unchecked" in detail
+        assert "Nothing else in the data determines the pressure at PT-5." in detail
+
+
+async def test_key_a_unfolds_the_answers(troubled_result: CheckResult):
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        answers = app.screen.query_one(Answers)
+        assert answers.region.height == 5
+        await pilot.press("a")
+        await pilot.pause()
+        assert answers.region.height > 5
+        assert app.screen.query_one(GaugeTable).region.height >= 4
+        await pilot.press("a")
+        await pilot.pause()
+        assert answers.region.height == 5
+
+
+async def test_keys_move_between_gauges_and_findings(troubled_result: CheckResult):
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        assert isinstance(app.focused, GaugeTable)
+        await pilot.press("f")
+        await pilot.pause()
+        aside = app.screen.query_one("#aside")
+        assert app.focused is aside
+        assert app.screen.query_one(FindingsList).region.y - aside.region.y <= 1
+        await pilot.press("g")
+        assert isinstance(app.focused, GaugeTable)
+
+
+async def test_brackets_of_names_and_sentences_are_shown_as_written(troubled_result: CheckResult):
+    job = replace(troubled_result.job, title="Loop [bar] [/x] [red]")
+    gauge = found_gauge("PT[1]", "S[m]", Verdict.FAIL, why="[kPa] [/] kept")
+    cause = replace(troubled_result.causes[0], says="reads [bar] high [/b]")
+    result = replace(troubled_result, job=job, gauges=(gauge,), causes=(cause,))
+    app = HeadledgerApp(Path("riser"), check=answers_with(result))
+    async with app.run_test(size=LARGE) as pilot:
+        await settled(pilot)
+        assert "Loop [bar] [/x] [red]" in shown(app, "TitleLine")
+        assert table_rows(app)[0][1] == "PT[1]"
+        assert "PT[1] at S[m]" in shown(app, "GaugeDetail")
+        assert "[kPa] [/] kept" in shown(app, "GaugeDetail")
+        assert "reads [bar] high [/b]" in shown(app, ".finding")
+        assert "reads [bar] high [/b]" in shown(app, ".answer")
+
+
+async def test_unusable_job_lists_every_problem(troubled_result: CheckResult):
+    problems = [
+        Problem("gauges.csv, row 4, unit", "is no unit of pressure", "[brag]", "a unit such as barg"),
+        Problem("runs.csv, row 2, bore [mm]", "is blank"),
+    ]
+    app = HeadledgerApp(Path("riser"), check=raises(JobError(problems)))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        assert isinstance(app.screen, EndedScreen)
+        assert "2 problems" in shown(app, "#heading")
+        assert shown(app, ".problem").splitlines() == [str(problem) for problem in problems]
+        assert app.ending is Ending.REFUSED
+
+
+@pytest.mark.parametrize(
+    ("error", "ending"),
+    [
+        (NothingToCheckError("no spell holds a reading"), Ending.NOTHING_TO_CHECK),
+        (NetworkError("run R1 has no solution"), Ending.REFUSED),
+        (ZeroDivisionError("division by zero"), Ending.FAULT),
+    ],
+)
+async def test_error_in_the_thread_is_told_on_the_screen(error: Exception, ending: Ending):
+    app = HeadledgerApp(Path("riser"), check=raises(error))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        assert app.ending is ending
+        assert str(error) in shown(app, ".problem")
+        await pilot.press("q")
+    assert not app.is_running
+
+
+async def test_working_screen_stands_while_the_check_runs(sound_result: CheckResult):
+    with held(sound_result) as check:
+        app = HeadledgerApp(Path("riser"), check=check)
+        async with app.run_test(size=SMALL) as pilot:
+            assert isinstance(app.screen, WorkingScreen)
+            assert check.at_half.wait(5)
+            await pilot.pause()
+            assert str(app.screen.query_one("#step", Label).render()) == "Checking: weighing causes"
+            check.let_go.set()
+            await settled(pilot)
+            assert isinstance(app.screen, FindingsScreen)
+
+
+async def test_escape_stops_the_check_and_its_half_result_is_not_shown(sound_result: CheckResult):
+    with held(sound_result) as check:
+        app = HeadledgerApp(Path("riser"), check=check)
+        async with app.run_test(size=SMALL) as pilot:
+            assert check.at_half.wait(5)
+            await pilot.press("escape")
+            await wait_until(pilot, lambda: isinstance(app.screen, EndedScreen))
+            assert app.ending is Ending.STOPPED
+            assert "stopped" in shown(app, "#heading")
+
+
+async def test_check_again_runs_the_check_anew(sound_result: CheckResult):
+    with held(sound_result) as check:
+        app = HeadledgerApp(Path("riser"), check=check)
+        async with app.run_test(size=SMALL) as pilot:
+            assert check.at_half.wait(5)
+            await pilot.press("escape")
+            await wait_until(pilot, lambda: isinstance(app.screen, EndedScreen))
+            check.let_go.set()
+            await pilot.press("r")
+            await wait_until(pilot, lambda: isinstance(app.screen, FindingsScreen))
+            assert check.runs == 2
+            assert app.ending is Ending.FOUND
+
+
+async def test_flood_of_progress_ends_with_the_newest(sound_result: CheckResult):
+    done = threading.Event()
+
+    def check(folder: Path, *, on_progress: Callable[[str, float], None], should_stop: Callable[[], bool]):
+        for step in range(2000):
+            on_progress(f"step {step}", step / 2000)
+        done.wait(10)
+        return sound_result
+
+    app = HeadledgerApp(Path("riser"), check=check)
+    async with app.run_test(size=SMALL) as pilot:
+        try:
+            step = app.screen.query_one("#step", Label)
+            await wait_until(pilot, lambda: str(step.render()) == "Checking: step 1999")
+            assert isinstance(app.screen, WorkingScreen)
+        finally:
+            done.set()
+        await settled(pilot)
+
+
+async def test_without_colour_a_failure_is_bold_and_underlined(
+    troubled_result: CheckResult, monkeypatch: pytest.MonkeyPatch
+):
+    monkeypatch.setenv("NO_COLOR", "1")
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        cell = app.screen.query_one(GaugeTable).get_row_at(0)[0]
+        assert isinstance(cell, Text)
+        style = cell.style
+        assert not isinstance(style, str)
+        assert style.bold
+        assert style.underline
+        assert "ansi-dark" not in app.available_themes
+
+
+async def test_change_of_theme_keeps_rows_and_cursor(troubled_result: CheckResult):
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        await pilot.press("down")
+        before = table_rows(app)
+        dark = app.screen.query_one(GaugeTable).get_row_at(0)[0].style
+        app.theme = "headledger-light"
+        await pilot.pause()
+        table = app.screen.query_one(GaugeTable)
+        assert table_rows(app) == before
+        assert table.cursor_row == 1
+        assert table.get_row_at(0)[0].style != dark
+        assert app.screen.query_one(GaugeDetail).gauge == table.gauge_at(1)
+
+
+async def test_picture_of_the_screen_fetches_nothing(sound_result: CheckResult):
+    app = HeadledgerApp(Path("riser"), check=answers_with(sound_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        addresses = re.findall(r"https?://[^\s\"')]+", app.export_screenshot())
+    assert set(addresses) == {"http://www.w3.org/2000/svg"}
+
+
+async def test_hundreds_of_gauges_stay_in_order(sound_result: CheckResult):
+    gauges = tuple(found_gauge(f"PT-{i:03}", "S1", Verdict.FAIL if i % 50 == 0 else Verdict.PASS) for i in range(300))
+    app = HeadledgerApp(Path("riser"), check=answers_with(replace(sound_result, gauges=gauges)))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        rows = table_rows(app)
+        assert [row[1] for row in rows[:6]] == ["PT-000", "PT-050", "PT-100", "PT-150", "PT-200", "PT-250"]
+        assert len(rows) == 300
+        await pilot.press("ctrl+end")
+        await pilot.pause()
+        assert app.screen.query_one(GaugeTable).cursor_row == 299
+        assert "PT-299" in shown(app, "GaugeDetail")
+
+
+async def wait_until(pilot: Pilot[None], holds: Callable[[], bool]) -> None:
+    """Let the screen work until something holds; fails the test where it never does."""
+    for _ in range(500):
+        await pilot.pause(0.01)
+        if holds():
+            return
+    raise AssertionError("it never came to hold")
