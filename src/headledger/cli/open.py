@@ -4,10 +4,15 @@ from __future__ import annotations
 
 import sys
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import click
 
+from headledger.cli.exit_codes import ExitCode
 from headledger.cli.samples import JOB_FILE, job_folder, sample_names
+
+if TYPE_CHECKING:
+    from headledger.tui.ending import Ending
 
 
 @click.command("open", short_help="Look at JOB on the screen of the terminal.")
@@ -21,7 +26,18 @@ def open_job(job: str | None) -> int:
 
     app = HeadledgerApp(folder)
     app.run()
-    return app.return_code or 0
+    return ExitCode.FAULT if app.return_code else status_of(app.ending)
+
+
+def status_of(ending: Ending) -> ExitCode:
+    """The exit status for what was on the screen last; what a shown result says, the screen has said."""
+    return {
+        "found": ExitCode.SOUND,
+        "stopped": ExitCode.INTERRUPTED,
+        "refused": ExitCode.UNUSABLE,
+        "nothing to check": ExitCode.NOTHING_CHECKED,
+        "fault": ExitCode.FAULT,
+    }[ending.value]
 
 
 def _folder_here() -> Path:
