@@ -3,13 +3,11 @@
 from __future__ import annotations
 
 import sys
-from pathlib import Path
 from typing import TYPE_CHECKING
 
 import click
 
 from headledger.cli.exit_codes import ExitCode
-from headledger.cli.samples import job_folder
 from headledger.cli.streams import ProgressLine, result_stream, say
 
 if TYPE_CHECKING:
@@ -29,6 +27,8 @@ def check(job: str, json_path: str | None, no_color: bool, quiet: bool) -> int:
     Exit status: 0 nothing is wrong; 1 something is; 2 the job or its logs cannot be used; 3 nothing can be checked;
     70 a fault of headledger; 130 interrupted.
     """
+    from headledger.cli.samples import job_folder
+
     folder = job_folder(job)
     _refuse_bad_target(json_path)
     from headledger.diagnosis.check import check_folder
@@ -59,8 +59,10 @@ def exit_code_of(result: CheckResult) -> ExitCode:
 
 def _refuse_bad_target(json_path: str | None) -> None:
     """Before the work, not after it: a result file that cannot be written."""
-    if json_path in (None, _TO_STDOUT):
+    if json_path is None or json_path == _TO_STDOUT:
         return
+    from pathlib import Path
+
     path = Path(json_path)
     if path.is_dir():
         raise click.BadParameter(f"{path} is a folder, expected a file to write.", param_hint="--json")
@@ -69,6 +71,8 @@ def _refuse_bad_target(json_path: str | None) -> None:
 
 
 def _write_json(result: CheckResult, json_path: str) -> None:
+    from pathlib import Path
+
     from headledger.sheets.to_json import result_to_text
 
     if json_path == _TO_STDOUT:

@@ -3,15 +3,15 @@
 from __future__ import annotations
 
 import sys
-from pathlib import Path
 from typing import TYPE_CHECKING
 
 import click
 
 from headledger.cli.exit_codes import ExitCode
-from headledger.cli.samples import JOB_FILE, job_folder, sample_names
 
 if TYPE_CHECKING:
+    from pathlib import Path
+
     from headledger.tui.ending import Ending
 
 
@@ -19,6 +19,8 @@ if TYPE_CHECKING:
 @click.argument("job", required=False)
 def open_job(job: str | None) -> int:
     """Look at JOB on the screen of the terminal; without JOB, at the folder you are in."""
+    from headledger.cli.samples import job_folder
+
     folder = job_folder(job) if job is not None else _folder_here()
     if not (sys.stdin.isatty() and sys.stdout.isatty()):
         raise click.UsageError("`open` needs a terminal; `headledger check JOB` prints the same findings as text.")
@@ -41,6 +43,10 @@ def status_of(ending: Ending) -> ExitCode:
 
 
 def _folder_here() -> Path:
+    from pathlib import Path
+
+    from headledger.cli.samples import JOB_FILE, sample_names
+
     here = Path.cwd()
     if (here / JOB_FILE).is_file():
         return here
