@@ -10,7 +10,9 @@ from dataclasses import replace
 from pathlib import Path
 
 import pytest
+from rich.style import Style
 from rich.text import Text
+from textual.color import Color
 from textual.pilot import Pilot
 from textual.widgets import Label, Static
 
@@ -81,6 +83,17 @@ async def settled(pilot: Pilot[None]) -> None:
 
 def shown(app: HeadledgerApp, selector: str) -> str:
     return "\n".join(str(widget.render()) for widget in app.screen.query(selector).results(Static))
+
+
+def contrast(ink: Color, paper: Color) -> float:
+    """Contrast ratio by relative luminance, as WCAG 2.1 defines both."""
+
+    def luminance(color: Color) -> float:
+        linear = [c / 12.92 if c <= 0.03928 else ((c + 0.055) / 1.055) ** 2.4 for c in color.normalized]
+        return 0.2126 * linear[0] + 0.7152 * linear[1] + 0.0722 * linear[2]
+
+    dark, light = sorted((luminance(ink), luminance(paper)))
+    return (light + 0.05) / (dark + 0.05)
 
 
 def table_rows(app: HeadledgerApp) -> list[list[str]]:
@@ -310,6 +323,22 @@ async def test_change_of_theme_keeps_rows_and_cursor(troubled_result: CheckResul
         assert table.cursor_row == 1
         assert table.get_row_at(0)[0].style != dark
         assert app.screen.query_one(GaugeDetail).gauge == table.gauge_at(1)
+
+
+@pytest.mark.parametrize("theme", ["headledger-dark", "headledger-light"])
+async def test_every_verdict_can_be_read_on_its_background(troubled_result: CheckResult, theme: str):
+    """A contrast of 4.5 to 1 is what the Web Content Accessibility Guidelines 2.1 ask for (1.4.3, level AA)."""
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        app.theme = theme
+        await pilot.pause()
+        table = app.screen.query_one(GaugeTable)
+        for row in range(table.row_count):
+            style = table.get_row_at(row)[0].style
+            assert isinstance(style, Style)
+            assert style.color
+            assert contrast(Color.from_rich_color(style.color), table.background_colors[1]) >= 4.5, row
 
 
 async def test_picture_of_the_screen_fetches_nothing(sound_result: CheckResult):
