@@ -40,9 +40,9 @@ class Reject:
 class Digest:
     """One log file by blocks of time.
 
-    Blocks lie on the grid of whole multiples of `width_s` since 1970-01-01 UTC and only blocks that hold a row are kept;
-    widths are powers of two times one second, so that any two digests can be brought to a common grid by merging blocks.
-    Array rows are blocks in time order, array columns are log columns.
+    Blocks lie on the grid of whole multiples of `width_s` since 1970-01-01 UTC and only blocks that hold a row are
+    kept; widths are powers of two times one second, so that any two digests can be brought to a common grid by merging
+    blocks. Array rows are blocks in time order, array columns are log columns.
 
     Parameters
     ----------
