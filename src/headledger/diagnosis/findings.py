@@ -93,17 +93,25 @@ def list_findings(posterior: Posterior) -> tuple[Finding, ...]:
 
 
 def _swaps(posterior: Posterior) -> dict[Key, dict[Key, float]]:
-    """For each cause, the weight of explanations that hold another cause in its stead and are otherwise the same."""
+    """For each cause, the weight of what stands in its stead in explanations otherwise the same.
+
+    Every such setting counts by the part of the cause's own weight that lies in it, so that what a cause merely comes along with is no
+    rival of it.
+    """
     by_rest: dict[frozenset[Key], dict[Key, float]] = defaultdict(lambda: defaultdict(float))
+    whole: dict[Key, float] = defaultdict(float)
     for explanation in posterior.explanations:
         for key in explanation.keys:
             by_rest[explanation.keys - {key}][key] += explanation.probability
+            whole[key] += explanation.probability
     swaps: dict[Key, dict[Key, float]] = defaultdict(lambda: defaultdict(float))
     for stead in by_rest.values():
-        for key in stead:
-            for other, weight in stead.items():
-                if other != key:
-                    swaps[key][other] += weight
+        for key, own in stead.items():
+            share = own / whole[key] if whole[key] > 0.0 else 0.0
+            if share > LEFT_OUT:
+                for other, weight in stead.items():
+                    if other != key:
+                        swaps[key][other] += share * weight
     return swaps
 
 

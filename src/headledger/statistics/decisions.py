@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 import numpy as np
 from numpy.typing import NDArray
 from scipy.special import ndtr
@@ -56,7 +58,7 @@ def inside_box_probability(mean: Array, covariance: Array, limit: Array) -> Arra
     deviation = np.sqrt(np.maximum(np.diag(covariance), (1e-9 * limit) ** 2))
     if mean.shape[1] == 1:
         return _between(mean[:, 0], deviation[0], limit[0])
-    unit, weight = np.polynomial.legendre.leggauss(NODES)
+    unit, weight = _legendre()
     low = np.clip(mean[:, 0] - REACH * deviation[0], -limit[0], limit[0])
     high = np.clip(mean[:, 0] + REACH * deviation[0], -limit[0], limit[0])
     half = (high - low) / 2.0
@@ -67,6 +69,13 @@ def inside_box_probability(mean: Array, covariance: Array, limit: Array) -> Arra
     rest = np.sqrt(max(covariance[1, 1] - slope * covariance[0, 1], (1e-9 * limit[1]) ** 2))
     centre = mean[:, [1]] + slope * (first - mean[:, [0]])
     return np.asarray(np.clip((half[:, None] * weight * density * _between(centre, rest, limit[1])).sum(axis=1), 0.0, 1.0))
+
+
+@lru_cache(maxsize=1)
+def _legendre() -> tuple[Array, Array]:
+    """Nodes and weights on −1 … 1."""
+    unit, weight = np.polynomial.legendre.leggauss(NODES)
+    return unit, weight
 
 
 def _between(centre: Array, deviation: float, limit: float) -> Array:

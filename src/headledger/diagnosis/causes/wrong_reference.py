@@ -20,9 +20,11 @@ def marks(view: View) -> list[Mark]:
         vector = view.gauge_vector(index, 1.0)
         least = view.least_size(vector)
         sealed = abs(barometer - SEALED_PA)
-        forms = [("barometer", barometer)]
-        if sealed - doubt > least:
-            forms.append(("sealed", sealed))
+        forms = [
+            (form, size)
+            for form, size in (("barometer", barometer), ("sealed", sealed))
+            if size - doubt > least
+        ]
         for form, size in forms:
             found.append(
                 Mark(
