@@ -277,7 +277,7 @@ class StampReader:
         return seconds
 
     def _read(self, text: str, spans: dict[str, tuple[int, int]], matrix: NDArray[np.uint8]) -> Array:
-        """Seconds of rows of one layout, by their own offset where they carry one, nan where there is no such time. [s]"""
+        """Seconds of rows of one layout, by their own offset if they carry one, nan where there is no such time. [s]"""
 
         def part(name: str) -> Digits:
             return _number(matrix, spans[name]) if name in spans else np.zeros(len(matrix), dtype=np.int64)
