@@ -28,7 +28,7 @@ LEAST_SAMPLES = 3
 """Fewest rows of the log that make a found spell."""
 
 LEAST_SHARE = 0.2
-"""Shortest spell as a part of the median one: what is shorter is a transition."""
+"""Shortest spell as a part of the typical one: what is shorter is a transition. [-]"""
 
 MOVING_SHARE = 0.12
 """Largest change of a flow across a spell, as a part of the greatest flow: more is no steady state. [-]"""
@@ -112,13 +112,19 @@ def _found(layout: Layout, timeline: Timeline, first: int, last: int) -> list[Sp
     spans = [span for span in spans if _is_settled(layout, timeline, span)]
     if not spans:
         return []
-    typical = float(np.median([b - a for a, b in spans]))
+    typical = _typical_length(spans)
     trimmed = [_trimmed(layout, timeline, span) for span in spans if span[1] - span[0] >= LEAST_SHARE * typical]
     return [
         Spell(kind=_kind(layout, timeline, a, b), first=a, last=b)
         for a, b in trimmed
         if timeline.samples[a:b].sum() >= LEAST_SAMPLES
     ]
+
+
+def _typical_length(spans: list[tuple[int, int]]) -> float:
+    """Length such that half of the time lies in stretches at least as long: many short transitions do not move it."""
+    lengths = np.sort([b - a for a, b in spans])[::-1]
+    return float(lengths[int(np.searchsorted(np.cumsum(lengths), lengths.sum() / 2.0))])
 
 
 def _pieces(first: int, last: int) -> NDArray[np.int64]:
