@@ -88,7 +88,8 @@ class Frame:
         free = [which, *(i for i in chosen if i not in fixed and i != which)]
         sizes = np.array([self.marks[i].prior.least for i in fixed])
         product = self.product[free] - self.gram[np.ix_(free, fixed)] @ sizes
-        return size_posterior(SizePriors.of([self.marks[i].prior for i in free]), self.gram[np.ix_(free, free)], product)
+        priors = SizePriors.of([self.marks[i].prior for i in free])
+        return size_posterior(priors, self.gram[np.ix_(free, free)], product, NODES if len(free) < 3 else NODES // 3)
 
 
 def _block(gram: Array, first: NDArray[np.int64], second: NDArray[np.int64]) -> Array:

@@ -32,7 +32,7 @@ KEPT_NATS = 12.0
 PARALLEL = 0.9999
 """Whitened correlation above which two marks are one and the same to the data: never together in a set."""
 
-PAIR_NODES, TRIPLE_NODES = 12, 8
+PAIR_NODES, TRIPLE_NODES = 12, 6
 """Quadrature nodes a sign for sets of two and three: to about 1 % in evidence, far finer than any prior is known."""
 
 OWN_SOLUTIONS = 24
@@ -159,16 +159,21 @@ def _normalised(explanations: list[Explanation]) -> tuple[Explanation, ...]:
     )
 
 
-def set_log_prior(shares: NDArray[np.float64], prior: CountPrior, chosen: Sequence[int]) -> float:
-    """Log prior of one set of marks."""
-    count = len(chosen)
+def set_log_priors(shares: NDArray[np.float64], prior: CountPrior, sets: NDArray[np.int64]) -> Array:
+    """Log priors of many sets of marks of one size, shape (sets, k)."""
+    count = sets.shape[1]
     if count == 0:
-        return float(np.log(prior.of[0]))
+        return np.full(sets.shape[0], np.log(prior.of[0]))
     # unordered sets of different causes: count! orders, less what would be the same cause twice
     spread = float(np.sum(shares**2))
     distinct = {1: 1.0, 2: 1.0 - spread}.get(count, max((1.0 - spread) ** 3, 0.1))
     orders = float(np.prod(np.arange(1, count + 1)))
-    return float(np.log(prior.of[count]) + np.log(shares[list(chosen)]).sum() + np.log(orders / distinct))
+    return np.asarray(np.log(prior.of[count] * orders / distinct) + np.log(shares)[sets].sum(axis=1))
+
+
+def set_log_prior(shares: NDArray[np.float64], prior: CountPrior, chosen: Sequence[int]) -> float:
+    """Log prior of one set of marks."""
+    return float(set_log_priors(shares, prior, np.array([chosen], dtype=np.int64))[0])
 
 
 def _weigh(
@@ -183,7 +188,7 @@ def _weigh(
     weights |= _evaluate(frame, shares, prior, singles)
     if prior.most >= 2:
         pairs = _pairs(frame)
-        bound = _pair_bounds(frame, pairs) + np.array([set_log_prior(shares, prior, pair) for pair in pairs])
+        bound = _pair_bounds(frame, pairs) + set_log_priors(shares, prior, np.array(pairs, dtype=np.int64).reshape(-1, 2))
         floor = max(weights.values()) - KEPT_NATS
         weights |= _evaluate(frame, shares, prior, [pair for pair, most in zip(pairs, bound, strict=True) if most > floor])
     grown: set[tuple[int, ...]] = set()
@@ -258,9 +263,8 @@ def _evaluate(
     if not sets:
         return {}
     index = np.array(sets)
-    log_prior = np.array([set_log_prior(shares, prior, chosen) for chosen in sets])
     count = {1: NODES, 2: PAIR_NODES}.get(index.shape[1], TRIPLE_NODES)
-    values = frame.log_gains(index, count) + log_prior
+    values = frame.log_gains(index, count) + set_log_priors(shares, prior, index)
     return {chosen: float(value) for chosen, value in zip(sets, values, strict=True)}
 
 

@@ -25,8 +25,11 @@ WIDENED = 10.0
 UNCHECKED_SHARE = 0.8
 """Part of the widened prior's standard deviation beyond which nothing else in the data determines a gauge. [-]"""
 
-LEAST_WEIGHT = 1e-5
-"""Explanations less probable than this change no verdict. [-]"""
+WEIGHT_JUDGED = 0.998
+"""Verdicts are averaged over the leading explanations that together hold this much; the rest cannot move one by more. [-]"""
+
+NODES_BY_CAUSES = {1: 32, 2: 12, 3: 6}
+"""Quadrature nodes a sign and cause for the sizes of a set of so many causes."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -192,7 +195,9 @@ def _error_by_size(
     gram = widened.product(white, white)
     gram[np.diag_indices_from(gram)] = np.maximum(np.diag(gram), 1e-18)
     product = widened.product(white, residual[:, None])[:, 0]
-    posterior: SizePosterior = size_posterior(SizePriors.of([marks[i].prior for i in free]), gram, product)
+    posterior: SizePosterior = size_posterior(
+        SizePriors.of([marks[i].prior for i in free]), gram, product, NODES_BY_CAUSES.get(len(free), 6)
+    )
     mean = base[None, :] + posterior.sizes[:, None] * slope[0][None, :]
     if len(free) > 1:
         most = np.array([marks[i].prior.most for i in free[1:]])
@@ -244,7 +249,7 @@ def outside_probability(model: Model, posterior: Posterior, gauge: int) -> float
     """Probability that a gauge's own error exceeds its tolerance in some spell, averaged over explanations. [-]"""
     total, weight = 0.0, 0.0
     for explanation in posterior.explanations:
-        if explanation.probability < LEAST_WEIGHT:
+        if weight > WEIGHT_JUDGED:
             break
         error = own_error(model, explanation, gauge)
         if error is not None:
