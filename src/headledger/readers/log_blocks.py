@@ -128,7 +128,7 @@ def _odd_quotes(data: NDArray[np.uint8], starts: Ints, delimiter: str) -> NDArra
     opening = np.flatnonzero((data == 34) & _quoted(data, starts))
     before = np.where(opening > 0, data[np.maximum(opening - 1, 0)], 10)
     within = opening[~np.isin(before, (10, 34, ord(delimiter)))]
-    odd = np.add.reduceat(data == 34, starts, dtype=np.int64) % 2 == 1
+    odd: NDArray[np.bool_] = np.add.reduceat(data == 34, starts, dtype=np.int64) % 2 == 1
     odd[np.searchsorted(starts, within, side="right") - 1] = True
     return odd
 
@@ -290,6 +290,7 @@ class Gathering:
         self.rows: Ints = np.zeros(0, dtype=np.int64)
         self._parts: list[Cells] = []
         self._held = 0
+        self._most_held = 500_000
 
     def add(self, row_s: Array, column: Ints, value_s: Array, values: Array, interval_s: float) -> None:
         """Take some rows and their values into account.
@@ -317,9 +318,10 @@ class Gathering:
             block = np.floor(value_s / self.width_s).astype(np.int64)
             self._parts.append(cells_of_values(column, block, values))
             self._held += self._parts[-1].index.size
-        if len(self._parts) > 1 and self._held > 500_000:
+        if len(self._parts) > 1 and self._held > self._most_held:
             self._parts = [self.cells()]
             self._held = self._parts[0].index.size
+            self._most_held = max(500_000, 2 * self._held)
 
     def _fit(self, at: Ints) -> int:
         """Double the width until all blocks are few enough; how often that was."""

@@ -160,6 +160,7 @@ class DayOrder:
     first_above_12: bool = False
     second_above_12: bool = False
     differ: bool = False
+    seen: bool = False
     example: str = ""
 
     def look(self, cells: Text) -> None:
@@ -168,6 +169,7 @@ class DayOrder:
             match = _STAMP.fullmatch(text)
             if not match or match["a"] is None or match["t"] == ".":
                 continue
+            self.seen = True
             first, second = _number(matrix, match.span("a")), _number(matrix, match.span("b"))
             self.first_above_12 |= bool((first > 12).any())
             self.second_above_12 |= bool((second > 12).any())
