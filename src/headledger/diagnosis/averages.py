@@ -22,7 +22,7 @@ from headledger.statistics.series import batch_means
 
 Array = NDArray[np.float64]
 
-FEWEST_BATCHES, MOST_BATCHES = 4, 16
+FEWEST_BATCHES, MOST_BATCHES = 4, 8
 """Batches of a spell whose scatter gives the noise of its mean: long enough to hold what wanders slowly."""
 
 OPEN_SHARE = 0.5
@@ -106,7 +106,7 @@ def _common(reading: Array, single: NDArray[np.bool_]) -> Array:
     if not used.size:
         return np.zeros(reading.shape[0])
     values = reading[:, used]
-    away = values - np.nanmean(values, axis=0)
+    away = values - _mean(values)
     empty = ~np.isfinite(away).any(axis=1)
     away[empty] = 0.0
     middle = np.nanmedian(away, axis=1)
@@ -139,7 +139,7 @@ def _flow_noise(timeline: Timeline, cut: slice, flow: Array, gauges: Array | Non
         return np.asarray(white)
     moves = flow - flow.mean(axis=0)
     if gauges is not None:
-        shared = np.where(np.isfinite(gauges), gauges - np.nanmean(gauges, axis=0), 0.0)
+        shared = np.where(np.isfinite(gauges), gauges - _mean(gauges), 0.0)
         left, size, _ = np.linalg.svd(shared, full_matrices=False)
         if size.size and size[0] > 0.0:
             moves = moves - np.outer(left[:, 0], left[:, 0] @ np.where(np.isfinite(moves), moves, 0.0))

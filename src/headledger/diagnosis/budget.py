@@ -41,6 +41,7 @@ class InputKind(StrEnum):
     TEMPERATURE = "liquid temperature"
     BAROMETER = "barometer"
     AMBIENT = "leg temperature"
+    CUT_OFF = "head of a cut-off section"
 
 
 OWN_CALIBRATION = (InputKind.OFFSET, InputKind.SLOPE, InputKind.READING, InputKind.WARMTH)

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from headledger.diagnosis.budget import UncertainInput, input_marks, uncertain_inputs
+from headledger.diagnosis.budget import InputKind, UncertainInput, input_marks, uncertain_inputs
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.means import SpellMeans
 from headledger.diagnosis.state import Applied, Point, State, evaluate, spell_graph
@@ -23,6 +23,10 @@ Array = NDArray[np.float64]
 
 HEAD_SD_M = 30.0
 """Prior width of an unknown head, about the readings' own middle: what freeing a head costs an explanation. [m]"""
+
+CUT_OFF_WANDER_M = (0.005, 0.5)
+"""How far the head of a section that is cut off wanders from spell to spell, at least and at most: nothing moves it but warmth and
+seeping valves. Between these it is taken from the section's own heads, so that no explanation gains by stretching them. [m]"""
 
 FREE_VELOCITY_M_S = 1.5
 """Prior width of an unmetered flow, as a velocity in its bore: the usual range of piping design (common practice). [m/s]"""
@@ -117,7 +121,14 @@ class Model:
     def __init__(self, layout: Layout, spells: Sequence[SpellMeans]) -> None:
         self.layout = layout
         self.spells = tuple(spells)
-        self.inputs: tuple[UncertainInput, ...] = uncertain_inputs(layout)
+        self._cut_off_m: dict[str, tuple[float, float]] = {}
+        self.inputs: tuple[UncertainInput, ...] = (
+            *uncertain_inputs(layout),
+            *(
+                UncertainInput(kind=InputKind.CUT_OFF, owner=name, sd=HEAD_SD_M)
+                for name in sorted({name for spell in self.spells for name in cut_off_sections(layout, spell).values()})
+            ),
+        )
 
     def linearise(self, points: Sequence[Point], *, applied: Applied | None = None) -> Linear:
         """The model at a point of each spell.
@@ -174,7 +185,10 @@ class Model:
         # a metered independent run flows as its meter says, give or take its gain: that gain is a shared input
         readings = readings + from_flow @ own_flow_marks
         drop_from_flow = state.slope_s_m2[:, None] * state.basis
-        heads = np.zeros((layout.gauge_count, 0)) if not state.graph.parts else state.reading_from_head(layout)
+        heads = state.reading_from_head(layout)
+        for part, name in cut_off_sections(layout, spell).items():
+            column = next(c for c, i in enumerate(self.inputs) if i.kind is InputKind.CUT_OFF and i.owner == name)
+            readings[:, column] = self.inputs[column].sd * heads[:, part]
         residual = [spell.reading_pa[place.gauges] - state.reading_pa[place.gauges]]
         noise = [spell.noise_pa[place.gauges]]
         own = [np.hstack([heads, from_flow])[place.gauges]]
@@ -239,6 +253,9 @@ class Model:
         middle = middle_heads_m(self.layout, spell, state)
         offset_head = middle - point.reference_head_m
         sd_head = np.full(graph.parts, HEAD_SD_M)
+        for part, name in cut_off_sections(self.layout, spell).items():
+            middle_m, sd_head[part] = self._cut_off_heads_m(name)
+            offset_head[part] = middle_m - point.reference_head_m[part]
         if not point.flow_m3_s.size:
             return sd_head, offset_head
         runs = graph.basis
@@ -250,6 +267,22 @@ class Model:
         if metered.any():
             sd_flow = np.where(metered, self._flow_noise_or(spell, runs, free), free)
         return np.concatenate([sd_head, sd_flow]), np.concatenate([offset_head, said - point.flow_m3_s])
+
+    def _cut_off_heads_m(self, name: str) -> tuple[float, float]:
+        """Middle and spread over all spells of what the gauges of a cut-off section say of its head. [m]"""
+        if name not in self._cut_off_m:
+            said = []
+            for spell in self.spells:
+                parts = {section: part for part, section in cut_off_sections(self.layout, spell).items()}
+                if name in parts:
+                    graph = spell_graph(self.layout, spell)
+                    flows = np.zeros(0 if spell.is_still else graph.basis.size)
+                    point = Point(reference_head_m=np.zeros(graph.parts), flow_m3_s=flows)
+                    state = evaluate(self.layout, spell, point)
+                    said.append(float(middle_heads_m(self.layout, spell, state)[parts[name]]))
+            spread = float(np.clip(1.5 * np.std(said), *CUT_OFF_WANDER_M))
+            self._cut_off_m[name] = (float(np.median(said)), spread)
+        return self._cut_off_m[name]
 
     def _flow_noise_or(self, spell: SpellMeans, runs: NDArray[np.int64], other: Array) -> Array:
         """Noise of metered flows, `other` where there is no meter."""
@@ -292,6 +325,33 @@ class Model:
                 )
             )
         return tuple(points)
+
+
+def cut_off_sections(layout: Layout, spell: SpellMeans) -> dict[int, str]:
+    """Parts that shut valves cut off in a spell: by part, a name that is the same in every spell.
+
+    Parameters
+    ----------
+    layout : Layout
+    spell : SpellMeans
+
+    Returns
+    -------
+    dict of int to str
+        Parts without exchange or pump beside a larger one; named by their stations.
+    """
+    graph = spell_graph(layout, spell)
+    if graph.parts < 2:
+        return {}
+    sizes = np.bincount(graph.part, minlength=graph.parts)
+    largest = int(np.argmax(sizes))
+    driven = {int(graph.part[layout.ends[run][0]]) for run in layout.pumps}
+    found = {}
+    for part in range(graph.parts):
+        members = np.flatnonzero(graph.part == part)
+        if part != largest and part not in driven and not any(layout.exchanges[int(s)] for s in members):
+            found[part] = " ".join(layout.job.stations[int(s)].name for s in members)
+    return found
 
 
 def middle_heads_m(layout: Layout, spell: SpellMeans, state: State) -> Array:

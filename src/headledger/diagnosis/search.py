@@ -205,12 +205,15 @@ def _weigh(
 
 
 def _compatible(frame: Frame) -> NDArray[np.bool_]:
-    """Whether two marks may stand in one set: not forms of one cause, not one and the same to the data."""
+    """Whether two marks may stand in one set: not forms of one cause, not one and the same to the data, no gauge scaled twice."""
     keys: dict[tuple[CauseKind, Place], int] = {}
     key = np.array([keys.setdefault(mark.key, len(keys)) for mark in frame.marks])
+    scale = np.array([mark.kind in (CauseKind.SPAN_ERROR, CauseKind.WRONG_UNIT) for mark in frame.marks])
+    gauge = np.array([mark.place.gauge for mark in frame.marks])
+    rescaled = scale[:, None] & scale[None, :] & (gauge[:, None] == gauge[None, :])
     length = np.sqrt(np.diag(frame.gram))
     parallel = np.abs(frame.gram) > PARALLEL * np.outer(length, length)
-    return (key[:, None] != key[None, :]) & ~parallel
+    return (key[:, None] != key[None, :]) & ~parallel & ~rescaled
 
 
 def _pairs(frame: Frame) -> list[tuple[int, ...]]:

@@ -18,7 +18,7 @@ from headledger.statistics.series import best_cuts
 
 Array = NDArray[np.float64]
 
-STEPS = 360
+STEPS = 300
 """Pieces of time in which steps are sought: fine enough for the minutes of a visit, few enough to be quick."""
 
 LEAST_PIECES = 4
@@ -36,10 +36,10 @@ MOVING_SHARE = 0.12
 STILL_SHARE = 0.01
 """A metered flow below this part of the greatest counts as none. [-]"""
 
-NOTICED_TOLERANCES = 0.15
+NOTICED_TOLERANCES = 0.3
 """Steps of a gauge smaller than this part of its tolerance need no new spell. [-]"""
 
-NOTICED_FLOW_SHARE = 0.01
+NOTICED_FLOW_SHARE = 0.03
 """Steps of a flow smaller than this part of the greatest need no new spell. [-]"""
 
 SETTLING_TIME_CONSTANTS = 4.0
@@ -228,9 +228,9 @@ def _kind(layout: Layout, timeline: Timeline, first: int, last: int) -> SpellKin
             metered = True
             noise = float(flow.std() / np.sqrt(flow.size))
             moving |= abs(float(flow.mean())) > STILL_SHARE * _greatest_flow(timeline, run) + 4.0 * noise
-    speeds = timeline.speed_ratio[first:last]
-    if np.isfinite(speeds).any() and float(np.nanmax(np.nanmean(speeds, axis=0))) > STILL_SHARE:
-        moving = True
+        speed = timeline.speed_ratio[first:last, run]
+        speed = speed[np.isfinite(speed)]
+        moving |= bool(speed.size) and float(speed.mean()) > STILL_SHARE
     if metered or moving:
         return SpellKind.FLOWING if moving else SpellKind.STILL
     return SpellKind.STILL if _agrees_as_still(layout, timeline, first, last) else SpellKind.FLOWING
