@@ -139,8 +139,29 @@ class Cells:
     trailing_equal: NDArray[np.int64]
 
 
+def no_cells() -> Cells:
+    """Cells of nothing."""
+    number, measure = np.zeros(0, dtype=np.int64), np.zeros(0)
+    return Cells(
+        column=number,
+        index=number,
+        count=number,
+        mean=measure,
+        square_sum=measure,
+        first=measure,
+        last=measure,
+        least=measure,
+        greatest=measure,
+        difference_square_sum=measure,
+        longest_equal=number,
+        leading_equal=number,
+        trailing_equal=number,
+    )
+
+
 def joined(parts: Sequence[Cells]) -> Cells:
     """All cells of some parts, earlier values in earlier parts, in order of column and block."""
+    parts = parts or [no_cells()]
     arrays = {field.name: np.concatenate([getattr(part, field.name) for part in parts]) for field in fields(Cells)}
     order = np.lexsort((arrays["index"], arrays["column"]))
     return Cells(**{name: array[order] for name, array in arrays.items()})

@@ -245,7 +245,7 @@ def cells_of_values(column: Ints, index: Ints, values: Array) -> Cells:
     column, index : ndarray of int64
         Column and block of each value, in order of column and then of block.
     values : ndarray of float
-        In order of time within each column.
+        In order of time within each column; at least one.
     """
     size = values.size
     begins = np.ones(size, dtype=bool)
@@ -255,10 +255,10 @@ def cells_of_values(column: Ints, index: Ints, values: Array) -> Cells:
     ends = starts + count - 1
     step = np.zeros(size)
     with np.errstate(over="ignore", invalid="ignore"):
-        mean = np.add.reduceat(values, starts) / count if size else np.zeros(0)
+        mean = np.add.reduceat(values, starts) / count
         step[1:] = np.where(begins[1:], 0.0, values[1:] - values[:-1])
         apart = values - np.repeat(mean, count)
-        square_sum, step_sum = (np.add.reduceat(part**2, starts) if size else np.zeros(0) for part in (apart, step))
+        square_sum, step_sum = (np.add.reduceat(part**2, starts) for part in (apart, step))
     runs = np.flatnonzero(begins | (step != 0.0))
     lengths = np.diff(np.append(runs, size))
     first_run = np.searchsorted(runs, starts)
@@ -271,10 +271,10 @@ def cells_of_values(column: Ints, index: Ints, values: Array) -> Cells:
         square_sum=square_sum,
         first=values[starts],
         last=values[ends],
-        least=np.minimum.reduceat(values, starts) if size else np.zeros(0),
-        greatest=np.maximum.reduceat(values, starts) if size else np.zeros(0),
+        least=np.minimum.reduceat(values, starts),
+        greatest=np.maximum.reduceat(values, starts),
         difference_square_sum=step_sum,
-        longest_equal=np.maximum.reduceat(lengths, first_run) if size else count,
+        longest_equal=np.maximum.reduceat(lengths, first_run),
         leading_equal=lengths[first_run],
         trailing_equal=lengths[last_run],
     )
@@ -338,5 +338,4 @@ class Gathering:
 
     def cells(self) -> Cells:
         """One cell a column and block."""
-        nothing = np.zeros(0, dtype=np.int64)
-        return reduced(joined([*self._parts, cells_of_values(nothing, nothing, np.zeros(0))]))
+        return reduced(joined(self._parts))
