@@ -99,9 +99,14 @@ class LogFile:
         carry = b""
         with _opened(self.path, self.name, packed=self.packed) as (stream, bottom):
             stream.read(self.skip)
-            while raw := stream.read(size):
-                plain = self._decode(decoder, raw, final=False) if decoder else raw
+            raw = stream.read(size)
+            while raw:
+                # Known beforehand to be the last, a block takes a line without an end along.
+                following = stream.read(size)
+                plain = self._decode(decoder, raw, final=not following) if decoder else raw
                 carry += plain.replace(b"\r", b"\n") if self.bare_returns else plain
+                if not following and not carry.endswith(b"\n"):
+                    carry += b"\n"
                 cut = carry.rfind(b"\n") + 1
                 if cut:
                     yield _one_line_ending(carry[:cut])
@@ -110,9 +115,7 @@ class LogFile:
                     raise JobError([Problem(self.name, "holds a line too long for a log", f"{len(carry)} bytes", "")])
                 if on_share:
                     on_share(min(bottom.tell() / whole, 1.0))
-            carry += self._decode(decoder, b"", final=True) if decoder else b""
-            if carry:
-                yield _one_line_ending(carry + b"\n")
+                raw = following
 
     def _decode(self, decoder: codecs.IncrementalDecoder, raw: bytes, *, final: bool) -> bytes:
         """Bytes in UTF-8 of bytes in the file's encoding."""

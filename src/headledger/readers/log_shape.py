@@ -431,7 +431,7 @@ def _find_long(
 def _tags_repeat(cells: Sequence[str]) -> bool:
     """Whether the texts are several that come again and again, as tags do, and hold no mere word of a status."""
     kinds = {cell.strip() for cell in cells}
-    return 1 < len(kinds) <= max(len(cells) // 2, 2) and any(re.search(r"\d", kind) for kind in kinds)
+    return 1 < len(kinds) <= len(cells) // 2 and any(re.search(r"\d", kind) for kind in kinds)
 
 
 def _wide_qualities(

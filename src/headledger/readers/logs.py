@@ -121,11 +121,11 @@ def _good_words(settings: LogSettings) -> frozenset[str]:
 
 
 def _row_blocks(
-    file: LogFile, shape: LogShape, *, size: int = BLOCK_BYTES, on_share: Callable[[float], None] | None = None
+    file: LogFile, shape: LogShape, *, size: int | None = None, on_share: Callable[[float], None] | None = None
 ) -> Iterator[tuple[Rows, list[Fault]]]:
     """Rows of a log below its header, block by block."""
     line = 1
-    for block in file.blocks(size=size, on_share=on_share):
+    for block in file.blocks(size=size or BLOCK_BYTES, on_share=on_share):
         above = block.count(b"\n") if line + block.count(b"\n") <= shape.first_line else max(shape.first_line - line, 0)
         block, line = _without_lines(block, above), line + above
         if block:
