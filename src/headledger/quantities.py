@@ -78,14 +78,13 @@ class Unit:
         """The same unit for a difference of pressures: ``barg`` becomes ``bar``."""
         if self.dimension is not Dimension.PRESSURE:
             return replace(self, offset=0.0)
-        match = _SUFFIX.match(self.text)
-        known = _PRESSURE.keys() | _PRESSURE_ALIASES.keys()
-        text = match["unit"].strip() if match and _look_up(self.text, {name: 0.0 for name in known}) is None else self.text
-        return replace(self, text=text, kind=PressureKind.DIFFERENCE)
+        plain, _ = _split_kind(self.text)
+        return replace(self, text=plain, kind=PressureKind.DIFFERENCE)
 
 
 POUND_FORCE_PER_SQUARE_INCH_PA = 0.45359237 * 9.80665 / 0.0254**2
 US_GALLON_M3 = 231.0 * 0.0254**3
+IMPERIAL_GALLON_M3 = 4.54609e-3
 FOOT_M, INCH_M = 0.3048, 0.0254
 STANDARD_GRAVITY = 9.80665
 ZERO_CELSIUS_K = 273.15
@@ -133,16 +132,14 @@ _PRESSURE: dict[str, float] = {
 }
 
 PRESSURE_FACTORS: dict[str, float] = {
-    name: _PRESSURE[name] for name in ("kPa", "MPa", "bar", "mbar", "psi", "kgf/cm2", "mH2O", "ftH2O", "inHg")
+    name: _PRESSURE[name]
+    for name in ("kPa", "MPa", "bar", "mbar", "psi", "kgf/cm2", "mH2O", "ftH2O", "inH2O", "inHg", "mmHg")
 }
 """Units that pressure gauges of this trade are logged in, in pascals: what a column may be in by mistake."""
 
 _PRESSURE_ALIASES: dict[str, str] = {
     "kg/cm2": "kgf/cm2",
-    "kgf/cm^2": "kgf/cm2",
-    "kg/cm^2": "kgf/cm2",
-    "kgf/cm²": "kgf/cm2",
-    "kg/cm²": "kgf/cm2",
+    "kp/cm2": "kgf/cm2",
     "lbf/in2": "psi",
     "lb/in2": "psi",
     "mWC": "mH2O",
@@ -155,10 +152,16 @@ _PRESSURE_ALIASES: dict[str, str] = {
     "mmWG": "mmH2O",
     "inWC": "inH2O",
     "inWG": "inH2O",
-    "inwg": "inH2O",
     "ftWC": "ftH2O",
     "ftWG": "ftH2O",
+    "mm Hg": "mmHg",
+    "in Hg": "inHg",
+    "m H2O": "mH2O",
+    "mm H2O": "mmH2O",
+    "in H2O": "inH2O",
+    "ft H2O": "ftH2O",
 }
+_PRESSURE_NAMES: dict[str, float] = _PRESSURE | {alias: _PRESSURE[name] for alias, name in _PRESSURE_ALIASES.items()}
 
 _TABLES: dict[Dimension, dict[str, float]] = {
     Dimension.PRESSURE: _PRESSURE,
@@ -188,16 +191,32 @@ _TABLES: dict[Dimension, dict[str, float]] = {
         "mL/min": 1e-6 / 60.0,
         "lps": 1e-3,
         "lpm": 1e-3 / 60.0,
+        "m3/hr": 1.0 / 3600.0,
+        "L/hr": 1e-3 / 3600.0,
         "gpm": US_GALLON_M3 / 60.0,
+        "gpm (US)": US_GALLON_M3 / 60.0,
+        "US gpm": US_GALLON_M3 / 60.0,
+        "USgpm": US_GALLON_M3 / 60.0,
         "gal/min": US_GALLON_M3 / 60.0,
+        "US gal/min": US_GALLON_M3 / 60.0,
+        "imp gal/min": IMPERIAL_GALLON_M3 / 60.0,
         "gal/h": US_GALLON_M3 / 3600.0,
         "ft3/s": FOOT_M**3,
         "cfs": FOOT_M**3,
         "ft3/min": FOOT_M**3 / 60.0,
+        "cfm": FOOT_M**3 / 60.0,
         "MGD": 1e6 * US_GALLON_M3 / 86400.0,
         "ML/d": 1e3 / 86400.0,
     },
-    Dimension.TEMPERATURE_DIFFERENCE: {"K": 1.0, "degC": 1.0, "C": 1.0, "°C": 1.0, "degF": 1 / 1.8, "F": 1 / 1.8, "°F": 1 / 1.8},
+    Dimension.TEMPERATURE_DIFFERENCE: {
+        "K": 1.0,
+        "degC": 1.0,
+        "C": 1.0,
+        "°C": 1.0,
+        "degF": 1.0 / 1.8,
+        "F": 1.0 / 1.8,
+        "°F": 1.0 / 1.8,
+    },
     Dimension.DENSITY: {
         "kg/m3": 1.0,
         "g/cm3": 1e3,
@@ -206,7 +225,16 @@ _TABLES: dict[Dimension, dict[str, float]] = {
         "lb/ft3": 0.45359237 / FOOT_M**3,
         "SG": 1e3,
     },
-    Dimension.VISCOSITY: {"Pa*s": 1.0, "Pas": 1.0, "Pa.s": 1.0, "mPa*s": 1e-3, "mPas": 1e-3, "mPa.s": 1e-3, "cP": 1e-3, "P": 0.1},
+    Dimension.VISCOSITY: {
+        "Pa*s": 1.0,
+        "Pa s": 1.0,
+        "Pa.s": 1.0,
+        "mPa*s": 1e-3,
+        "mPa s": 1e-3,
+        "mPa.s": 1e-3,
+        "cP": 1e-3,
+        "P": 0.1,
+    },
     Dimension.TIME: {"s": 1.0, "ms": 1e-3, "min": 60.0, "h": 3600.0, "hr": 3600.0, "d": 86400.0},
     Dimension.ANGLE: {"deg": 1.0, "°": 1.0, "rad": 57.29577951308232},
     Dimension.SALINITY: {"g/kg": 1.0, "ppt": 1.0, "psu": 1.0},
@@ -242,7 +270,10 @@ _PINT_NAMES: dict[Dimension, str] = {
     Dimension.CURRENT: "ampere",
 }
 
-_SUFFIX = re.compile(r"^(?P<unit>.*?)\s*(?:\((?P<bracket>g|a|d|gauge|abs|absolute)\)|(?P<bare>\s(?:g|a|d|gauge|abs))|(?P<tail>[gad]))$")
+_SUFFIX = re.compile(
+    r"^(?P<unit>.+?)(?:\s*\((?P<bracket>g|a|d|gauge|abs|absolute|diff)\)|\s+(?P<word>gauge|abs|absolute|diff)|\s*(?P<tail>[gad]))$",
+    re.IGNORECASE,
+)
 _KINDS = {
     "g": PressureKind.GAUGE,
     "gauge": PressureKind.GAUGE,
@@ -250,8 +281,11 @@ _KINDS = {
     "abs": PressureKind.ABSOLUTE,
     "absolute": PressureKind.ABSOLUTE,
     "d": PressureKind.DIFFERENCE,
+    "diff": PressureKind.DIFFERENCE,
 }
-_NUMBER = re.compile(r"^\s*(?:±|\+/-|\+-)?\s*(?P<number>[-+−]?(?:\d[\d\s]*[.,]?\d*|[.,]\d+)(?:[eE][-+]?\d+)?)\s*(?P<unit>.*?)\s*$")
+_NUMBER = re.compile(
+    r"^\s*(?:±|\+/-|\+-)?\s*(?P<number>[-+−]?(?:\d[\d\s]*[.,]?\d*|[.,]\d+)(?:[eE][-+]?\d+)?)\s*(?P<unit>.*?)\s*$"
+)
 
 
 def nearest(name: str, choices: Iterable[str]) -> str | None:
@@ -279,7 +313,7 @@ def parse_number(text: str, *, decimal_comma: bool = False) -> float:
     if decimal_comma:
         plain = plain.replace(".", "").replace(",", ".") if "," in plain else plain
     try:
-        value = float(plain)
+        value = float(plain if plain.isascii() and "_" not in plain else "")
     except ValueError:
         raise QuantityError("not a number", repr(text.strip()), "a number such as 12.5") from None
     if not math.isfinite(value):
@@ -310,7 +344,7 @@ def parse_unit(text: str, dimension: Dimension, *, default_kind: PressureKind | 
     """
     tidy = _tidy(text)
     if dimension is Dimension.TEMPERATURE:
-        found = _look_up(tidy, {name: 0.0 for name in _TEMPERATURES})
+        found = _look_up(tidy.replace(" ", ""), dict.fromkeys(_TEMPERATURES, 0.0))
         if found is not None:
             factor, offset = _TEMPERATURES[found]
             return Unit(text.strip(), dimension, factor, offset)
@@ -327,33 +361,47 @@ def parse_unit(text: str, dimension: Dimension, *, default_kind: PressureKind | 
 
 def _tidy(text: str) -> str:
     """A unit's text with the spellings of powers and products made one."""
-    plain = text.strip().replace("³", "3").replace("²", "2").replace("·", "*").replace("**", "").replace("^", "")
-    plain = re.sub(r"\b(liters?|litres?|l)(?=/|$)", "L", plain)
-    return re.sub(r"\s*/\s*", "/", plain)
+    plain = text.translate({ord("³"): "3", ord("²"): "2", ord("·"): "*", ord("^"): None}).replace("**", "")
+    plain = " ".join(plain.split())
+    plain = re.sub(r"\b(liters?|litres?|ltr|l)(?=/|$)", "L", plain)
+    return re.sub(r"\s*([/*@])\s*", r"\1", plain)
 
 
 def _look_up(name: str, table: Mapping[str, float]) -> str | None:
-    """The table's own spelling of a unit; another case is accepted where only one entry has it."""
+    """The table's own spelling of a unit; another case is accepted where it cannot mean another unit."""
     if name in table:
         return name
     folded = [entry for entry in table if entry.casefold() == name.casefold()]
-    return folded[0] if len(folded) == 1 else None
+    return folded[0] if len(folded) == 1 and not _other_prefix(name, folded[0]) else None
+
+
+def _other_prefix(name: str, entry: str) -> bool:
+    """Whether the case of a name makes milli of the table's mega, or mega of its milli.
+
+    A pressure all in small or all in capital letters says nothing by its case; ``mPa`` and ``Mbar`` do.
+    """
+    if name[0] == entry[0] or not re.match(r"[mM](Pa|bar|L|V|A)", entry):
+        return False
+    silent = name.isupper() or name.islower()
+    return not (silent and entry[1:].startswith(("Pa", "bar")))
+
+
+def _split_kind(text: str) -> tuple[str, PressureKind | None]:
+    """A pressure unit's text without its suffix, and what the suffix says; a unit of the table is never cut."""
+    plain = re.sub(r"\s*[@(](\d+(?:\.\d+)?)\s*(?:°|deg)?\s*([CF])\)?", r"@\1\2", _tidy(text).replace("H20", "H2O"))
+    if _look_up(plain, _PRESSURE_NAMES) is not None:
+        return plain, None
+    match = _SUFFIX.match(plain)
+    if not match or _look_up(match["unit"], _PRESSURE_NAMES) is None:
+        return plain, None
+    return match["unit"], _KINDS[(match["bracket"] or match["word"] or match["tail"]).casefold()]
 
 
 def _pressure_unit(tidy: str, default_kind: PressureKind | None) -> Unit | None:
     """A pressure unit with the kind that its suffix gives it; None where it is not in the table."""
-    names = _PRESSURE | {alias: _PRESSURE[name] for alias, name in _PRESSURE_ALIASES.items()}
-    plain = re.sub(r"\s*@\s*", "@", tidy).replace("°", "").replace("deg", "")
-    plain = plain.replace("H20", "H2O")
-    found = _look_up(plain, names)
-    if found is not None:
-        return Unit(tidy, Dimension.PRESSURE, names[found], kind=default_kind)
-    match = _SUFFIX.match(plain)
-    if not match:
-        return None
-    kind = _KINDS[(match["bracket"] or match["bare"] or match["tail"]).strip()]
-    found = _look_up(match["unit"].strip(), names)
-    return None if found is None else Unit(tidy, Dimension.PRESSURE, names[found], kind=kind)
+    plain, kind = _split_kind(tidy)
+    found = _look_up(plain, _PRESSURE_NAMES)
+    return None if found is None else Unit(tidy, Dimension.PRESSURE, _PRESSURE_NAMES[found], kind=kind or default_kind)
 
 
 @lru_cache(maxsize=1)
@@ -366,19 +414,37 @@ def _registry() -> Any:
 
 def _unit_by_pint(text: str, tidy: str, dimension: Dimension, kind: PressureKind | None) -> Unit:
     """A unit that only the general library knows, with its dimension checked."""
-    choices = [*_TABLES.get(dimension, {}), *(_TEMPERATURES if dimension is Dimension.TEMPERATURE else ())]
-    close = nearest(tidy, choices)
-    hint = f"a unit of {dimension}" + (f"; did you mean {close}?" if close else f" such as {choices[0]}" if choices else "")
-    if not tidy or dimension not in _PINT_NAMES:
-        raise QuantityError(f"not a unit of {dimension}", repr(text.strip()), hint)
+    if not tidy or dimension not in _PINT_NAMES or _twisted(tidy, dimension):
+        raise QuantityError(f"not a unit of {dimension}", repr(text.strip()), _right_units(tidy, dimension))
+    spelt = re.sub(r"(?<=[A-Za-z])([23])\b", r"**\1", tidy)
     try:
-        quantity = _registry().Quantity(1.0, text.strip())
-        factor = float(quantity.to(_PINT_NAMES[dimension]).magnitude)
+        factor = float(_registry().Quantity(1.0, spelt).to(_PINT_NAMES[dimension]).magnitude)
     except Exception as error:  # pint raises many kinds, some of them plain AttributeError or AssertionError
         wrong = type(error).__name__ == "DimensionalityError"
         fault = f"this unit is no unit of {dimension}" if wrong else "unknown unit"
-        raise QuantityError(fault, repr(text.strip()), hint) from None
+        raise QuantityError(fault, repr(text.strip()), _right_units(tidy, dimension)) from None
+    if not (math.isfinite(factor) and factor > 0.0):
+        raise QuantityError(f"not a unit of {dimension}", repr(text.strip()), _right_units(tidy, dimension))
     return Unit(text.strip(), dimension, factor, kind=kind)
+
+
+def _twisted(tidy: str, dimension: Dimension) -> bool:
+    """Whether a pressure unit is one of the table but for the case of its prefix: ``mPa`` is hardly a millipascal."""
+    if dimension is not Dimension.PRESSURE:
+        return False
+    match = _SUFFIX.match(tidy)
+    known = {name.casefold() for name in _PRESSURE_NAMES}
+    return tidy.casefold() in known or bool(match and match["unit"].casefold() in known)
+
+
+def _right_units(tidy: str, dimension: Dimension) -> str:
+    """What would be right in place of a faulty unit: the nearest of its dimension, or an example."""
+    choices = [*(_TEMPERATURES if dimension is Dimension.TEMPERATURE else _TABLES[dimension])]
+    if dimension is Dimension.PRESSURE:
+        choices += [name + suffix for name in PRESSURE_FACTORS for suffix in "ga"]
+    close = nearest(tidy, choices)
+    example = {Dimension.PRESSURE: "barg", Dimension.FLOW: "m3/h", Dimension.TEMPERATURE: "degC", Dimension.RATIO: "%"}
+    return f"{close}" if close else f"a unit of {dimension} such as {example.get(dimension, choices[0])}"
 
 
 def parse_quantity(text: str, dimension: Dimension, *, default_kind: PressureKind | None = None) -> float:
@@ -401,9 +467,37 @@ def parse_quantity(text: str, dimension: Dimension, *, default_kind: PressureKin
     """
     number, unit = split_quantity(text)
     if not unit and dimension is not Dimension.RATIO:
-        example = next(iter(_TABLES.get(dimension, _TEMPERATURES)))
-        raise QuantityError("the unit is missing", repr(text.strip()), f"a {dimension} with its unit, such as {number:g} {example}")
+        raise QuantityError("the unit is missing", repr(text.strip()), f"a number with {_right_units('', dimension)}")
     return float(parse_unit(unit, dimension, default_kind=default_kind).to_si(number))
+
+
+def parse_pressure(text: str, kind: PressureKind) -> float:
+    """A pressure of a given kind with its unit, in pascals; a leading ± is dropped.
+
+    Parameters
+    ----------
+    text : str
+        With the suffix of its kind or with none; a difference has none.
+    kind : PressureKind
+
+    Returns
+    -------
+    float
+        [Pa]
+
+    Raises
+    ------
+    QuantityError
+        No pressure, or its suffix says another kind.
+    """
+    number, unit_text = split_quantity(text)
+    value = parse_quantity(text, Dimension.PRESSURE, default_kind=kind)
+    unit = parse_unit(unit_text, Dimension.PRESSURE, default_kind=kind)
+    if unit.kind is not kind:
+        suffix = {PressureKind.GAUGE: "g", PressureKind.ABSOLUTE: "a", PressureKind.DIFFERENCE: ""}[kind]
+        right = f"{number:g} {unit.as_difference().text}{suffix}"
+        raise QuantityError(f"of the wrong kind, {unit.kind} and not {kind}", repr(text.strip()), right)
+    return value
 
 
 def split_quantity(text: str) -> tuple[float, str]:
@@ -418,9 +512,10 @@ def split_quantity(text: str) -> tuple[float, str]:
     if not match:
         raise QuantityError("not a number with a unit", repr(text.strip()), "a value such as 12.5 kPa")
     number = match["number"].replace(" ", "").replace("−", "-")
-    if "," in number and "." not in number:
-        number = number.replace(",", ".")
-    return parse_number(number), match["unit"]
+    if re.fullmatch(r"[-+]?[1-9]\d{0,2},\d{3}", number):
+        either = f"{number.replace(',', '')} or {number.replace(',', '.')}"
+        raise QuantityError("the comma may mark thousands or decimals", repr(text.strip()), either)
+    return parse_number(number.replace(",", ".")), match["unit"]
 
 
 def format_quantity(si_value: float, unit: Unit, digits: int = 3) -> str:
