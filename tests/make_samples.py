@@ -116,7 +116,7 @@ def head_lost(sample: Sample, pipe: Pipe, flow: float, density: float, viscosity
     """Head lost in a run by Darcy–Weisbach, loss coefficients and rated drop, in m."""
     bore = pipe.bore * LENGTH[sample.bore]
     velocity = flow / (np.pi * bore**2 / 4)
-    k = pipe.k + sample.blocked.get(pipe.name, 0.0)
+    k = pipe.k
     if flow > 0 and pipe.length:
         reynolds = density * velocity * bore / viscosity
         k += fluids.friction_factor(Re=reynolds, eD=pipe.roughness_mm * 1e-3 / bore) * pipe.length * LENGTH[sample.length] / bore
@@ -126,21 +126,24 @@ def head_lost(sample: Sample, pipe: Pipe, flow: float, density: float, viscosity
     return float(lost)
 
 
-def true_readings(sample: Sample, spell: int, hidden: dict[str, Array]) -> tuple[Array, dict[str, float]]:
-    """What perfect gauges at their true elevations would read, Pa, and what true meters would, m³/s."""
+def true_readings(sample: Sample, spell: int, hidden: dict[str, Array]) -> tuple[Array, Array, dict[str, float]]:
+    """What perfect gauges at their true elevations would read, the part of it that goes with flow squared, Pa, and the flows, m³/s."""
     kelvin = 273.15 + sample.celsius
     density = float(iapws95_rho(kelvin, 101325.0)) * float(hidden["density"][0])
     viscosity = float(mu_IAPWS(kelvin, density))
     flows = run_flows(sample, spell)
     heads = {sample.stations[0][0]: sample.heads[spell]}
+    losses = {sample.stations[0][0]: 0.0}
     for index, pipe in enumerate(sample.pipes):
         lost = head_lost(sample, pipe, flows[pipe.name], density, viscosity) * float(hidden["loss"][index])
-        if flows[pipe.name] > 0:
-            lost += sample.pocket.get(pipe.name, 0.0)
-        heads[pipe.end] = heads[pipe.start] - lost
+        speed = flows[pipe.name] / (np.pi * (pipe.bore * LENGTH[sample.bore]) ** 2 / 4)
+        lost += sample.blocked.get(pipe.name, 0.0) * speed**2 / (2 * GRAVITY)
+        losses[pipe.end] = losses[pipe.start] + lost
+        step = sample.pocket.get(pipe.name, 0.0) if flows[pipe.name] > 0 else 0.0
+        heads[pipe.end] = heads[pipe.start] - lost - step
     scale = LENGTH[sample.length]
     tap = {name: z * scale for name, z, _ in sample.stations}
-    out = []
+    out, with_flow = [], []
     for index, dial in enumerate(sample.dials):
         ending = [pipe for pipe in sample.pipes if pipe.end == dial.station]
         pipe = ending[0] if ending else next(p for p in sample.pipes if p.start == dial.station)
@@ -148,9 +151,11 @@ def true_readings(sample: Sample, spell: int, hidden: dict[str, Array]) -> tuple
         stated = tap[dial.station] if dial.elevation is None else dial.elevation * scale
         height = stated + float(hidden["elevation"][index])
         column = tap[dial.station] if dial.leg == "dry" else height
-        pressure = density * GRAVITY * (heads[dial.station] - column) - 0.5 * density * velocity**2
+        moving = 0.5 * density * velocity**2
+        pressure = density * GRAVITY * (heads[dial.station] - column) - moving
+        with_flow.append(-density * GRAVITY * losses[dial.station] - moving)
         out.append(pressure + (AIR_PA_M * height if dial.unit.endswith("g") else 100_600.0))
-    return np.array(out), flows
+    return np.array(out), np.array(with_flow), flows
 
 
 def logged(sample: Sample) -> tuple[list[str], list[list[str]]]:
@@ -169,11 +174,10 @@ def logged(sample: Sample) -> tuple[list[str], list[list[str]]]:
     wander = slow_noise(rng, ease.size, 300.0)
     flutter = 1 + 0.006 * slow_noise(rng, ease.size, 1.0)
     columns, names = [], []
-    pressures = np.array([state[0] for state in states])
+    pressures, with_flow = np.array([state[0] for state in states]), np.array([state[1] for state in states])
     for index, dial in enumerate(sample.dials):
-        rest = pressures[0, index]
         clean = pressures[low, index] * (1 - part) + pressures[high, index] * part
-        moving = (clean - rest) * (flutter**2 - 1) * 0.5
+        moving = (with_flow[low, index] * (1 - part) + with_flow[high, index] * part) * (flutter**2 - 1)
         unit = PRESSURE[dial.unit[:-1]]
         span = dial.high * unit
         curve = 0.8 * hidden["offset"][index] + 0.2 * hidden["slope"][index] * (2 * clean / span - 1)
@@ -185,7 +189,7 @@ def logged(sample: Sample) -> tuple[list[str], list[list[str]]]:
         columns.append([number(v, dial.division) for v in value])
     for index, pipe in enumerate(sample.pipes):
         if pipe.meter:
-            flow = np.array([state[1][pipe.name] for state in states]) / FLOW[sample.flow]
+            flow = np.array([state[2][pipe.name] for state in states]) / FLOW[sample.flow]
             value = (flow[low] * (1 - part) + flow[high] * part) * flutter * hidden["meter"][index]
             names.append(pipe.meter)
             columns.append([number(v, 0.01) for v in value + 0.004 * flow.max() * rng.normal(size=ease.size)])
