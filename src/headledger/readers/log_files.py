@@ -122,7 +122,11 @@ class LogFile:
         try:
             return decoder.decode(raw, final).removeprefix("\ufeff").encode("utf-8", errors="replace")
         except UnicodeError as error:
-            found = repr(error.object[error.start : error.start + 4]) if isinstance(error, UnicodeDecodeError) else ""
+            found = (
+                repr(error.object[error.start : error.start + 4])
+                if isinstance(error, UnicodeDecodeError)
+                else str(error)
+            )
             raise JobError([_wrong_encoding(self.name, self.encoding, found)]) from None
 
 

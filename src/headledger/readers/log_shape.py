@@ -368,7 +368,7 @@ def _position(look: _Look, names: Sequence[str], name: str, key: str) -> int:
     if bare in folded:
         return folded.index(bare)
     close = nearest(name, [each for each in names if each])
-    expected = f"did you mean {close}?" if close else "one of " + ", ".join(filter(None, names))
+    expected = f"the name {close}" if close else "one of " + ", ".join(filter(None, names))
     raise look.fail(f"no such column in {look.name}", name, expected, place=f"job.toml, [log] {key}")
 
 
