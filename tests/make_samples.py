@@ -119,10 +119,20 @@ def head_lost(sample: Sample, pipe: Pipe, flow: float, density: float, viscosity
     k = pipe.k
     if flow > 0 and pipe.length:
         reynolds = density * velocity * bore / viscosity
-        k += fluids.friction_factor(Re=reynolds, eD=pipe.roughness_mm * 1e-3 / bore) * pipe.length * LENGTH[sample.length] / bore
+        k += (
+            fluids.friction_factor(Re=reynolds, eD=pipe.roughness_mm * 1e-3 / bore)
+            * pipe.length
+            * LENGTH[sample.length]
+            / bore
+        )
     lost = k * velocity**2 / (2 * GRAVITY)
     if pipe.rated:
-        lost += pipe.rated[0] * PRESSURE[sample.drop] / (density * GRAVITY) * (flow / (pipe.rated[1] * FLOW[sample.flow])) ** 2
+        lost += (
+            pipe.rated[0]
+            * PRESSURE[sample.drop]
+            / (density * GRAVITY)
+            * (flow / (pipe.rated[1] * FLOW[sample.flow])) ** 2
+        )
     return float(lost)
 
 
@@ -314,7 +324,17 @@ def riser() -> Sample:
         for i in range(3)
     )  # fmt: skip
     dials = tuple(
-        Dial(tag=tag, station=station, elevation=z, unit=unit, high=high, accuracy=accuracy, limit=limit, division=step, leg=leg)
+        Dial(
+            tag=tag,
+            station=station,
+            elevation=z,
+            unit=unit,
+            high=high,
+            accuracy=accuracy,
+            limit=limit,
+            division=step,
+            leg=leg,
+        )
         for tag, station, z, unit, high, accuracy, limit, step, leg in (
             ("PT-20", "LOBBY", 1.1, "barg", 10.0, "0.25 % span", 0.0025, 0.001, ""),
             ("PT-21", "LOBBY", None, "barg", 10.0, "0.25 % span", 0.0025, 0.001, ""),
@@ -385,7 +405,15 @@ def fire() -> Sample:
     names = list(heights)
     stations = tuple((name, z, "open" if name in ("PUMPROOM", "HYDRANT") else "closed") for name, z in heights.items())
     pipes = tuple(
-        Pipe(name=f"FM-{i + 1}", start=names[i], end=names[i + 1], length=length, bore=6.065, k=2.0, meter="FT-90" if i == 0 else "")
+        Pipe(
+            name=f"FM-{i + 1}",
+            start=names[i],
+            end=names[i + 1],
+            length=length,
+            bore=6.065,
+            k=2.0,
+            meter="FT-90" if i == 0 else "",
+        )
         for i, length in enumerate((260.0, 410.0, 330.0))
     )
     dials = tuple(

@@ -45,7 +45,7 @@ def marks(y0: np.ndarray) -> tuple[list[str], np.ndarray, np.ndarray]:
         add(f"head in spell {w + 1}", m, HEAD_SD)
     for r in range(3):
         m = np.zeros((S, N))
-        m[:, r + 1:] = -DROP[:, None]
+        m[:, r + 1 :] = -DROP[:, None]
         add(f"loss of {RUNS[r]}", m, 0.075)
     for i in range(N):
         m = np.zeros((S, N))
@@ -75,7 +75,7 @@ def causes(y0: np.ndarray) -> list[tuple[str, str, np.ndarray, float, float, tup
         out.append(("span-error", TAGS[i], m, 0.3 * TOLERANCE / float((y0[:, i] - LOW).max()), 0.5, (-1, 1)))
     for r in range(3):
         m = np.zeros((S, N))
-        m[:, r + 1:] = -DROP[:, None] / 20.0  # per kPa lost at 36 m3/h
+        m[:, r + 1 :] = -DROP[:, None] / 20.0  # per kPa lost at 36 m3/h
         out.append(("blockage", RUNS[r], m, 0.3 * TOLERANCE, 200.0, (1,)))
     return out
 
@@ -111,17 +111,30 @@ def judge(readings: np.ndarray) -> dict:
         post /= post.sum()
         mean = float((post * sizes).sum())
         places = sum(c[0] == kind for c in listed)
-        table.append({"kind": kind, "at": at, "log_evidence": evidence, "prior": 0.5 / len(kinds) / places, "size": mean,
-                      "size_sd": float(np.sqrt((post * (sizes - mean) ** 2).sum()))})
+        table.append(
+            {
+                "kind": kind,
+                "at": at,
+                "log_evidence": evidence,
+                "prior": 0.5 / len(kinds) / places,
+                "size": mean,
+                "size_sd": float(np.sqrt((post * (sizes - mean) ** 2).sum())),
+            }
+        )
         grids.append((sizes, post, u))
     logp = np.array([t["log_evidence"] + np.log(t["prior"]) for t in table])
     p = np.exp(logp - logp.max())
     p /= p.sum()
     for t, q in zip(table, p):
         t["probability"] = float(q)
-    return {"readings_kpa": readings.tolist(), "head_at_a_m": head0.tolist(), "nominal_kpa": y0.tolist(),
-            "log_evidence_of_none": none, "explanations": sorted(table, key=lambda t: -t["probability"]),
-            "gauges": verdicts(r, y0, names, jac, sds, table, grids, p)}
+    return {
+        "readings_kpa": readings.tolist(),
+        "head_at_a_m": head0.tolist(),
+        "nominal_kpa": y0.tolist(),
+        "log_evidence_of_none": none,
+        "explanations": sorted(table, key=lambda t: -t["probability"]),
+        "gauges": verdicts(r, y0, names, jac, sds, table, grids, p),
+    }
 
 
 def verdicts(r, y0, names, jac, sds, table, grids, p) -> list[dict]:
@@ -175,7 +188,12 @@ def main() -> None:
     block[:, 2:] -= 0.9 * DROP[:, None]  # 18 kPa more at 36 m3/h in R2
     small = base.copy()
     small[:, 1] += 5.0
-    cases = {"sound": base, "PT-C reads 14 kPa high": shift, "R2 loses 18 kPa more at 36 m3/h": block, "PT-B reads 5 kPa high": small}
+    cases = {
+        "sound": base,
+        "PT-C reads 14 kPa high": shift,
+        "R2 loses 18 kPa more at 36 m3/h": block,
+        "PT-B reads 5 kPa high": small,
+    }
     print(json.dumps({name: judge(np.round(y, 2)) for name, y in cases.items()}, indent=1))
 
 

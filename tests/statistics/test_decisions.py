@@ -17,7 +17,9 @@ def test_conformity_probability_one_sided_matches_jcgm_106() -> None:
 @pytest.mark.parametrize(
     "guard_in_expanded, false_accept", [(3.0, 9.9e-10), (1.5, 0.00135), (1.0, 0.02275), (0.83, 0.04846), (0.0, 0.5)]
 )
-def test_conformity_probability_at_a_guarded_limit_matches_ilac_g8(guard_in_expanded: float, false_accept: float) -> None:
+def test_conformity_probability_at_a_guarded_limit_matches_ilac_g8(
+    guard_in_expanded: float, false_accept: float
+) -> None:
     """ILAC-G8:09/2019, Table 1: a value accepted just at the limit less r·U, U = 2u; the risk that it is outside."""
     outside = 1.0 - conformity_probability(10.0 - guard_in_expanded * 2.0, 1.0, -np.inf, 10.0)
     assert outside == pytest.approx(false_accept, rel=6e-3)

@@ -152,8 +152,13 @@ def _pooled_noise(layout: Layout, spells: tuple[Spell, ...], summaries: list[_Su
     """Noise of every gauge's mean in every spell: scatter pooled over spells of one kind, widened for few degrees of freedom. [Pa]"""
     gauges = layout.job.gauges
     floor = np.array([gauge.division_pa / np.sqrt(12.0) for gauge in gauges])
-    assumed = np.array([DEFAULT_SAMPLE_NOISE_TOLERANCES * gauge.tolerance.at(gauge.range_high_pa, gauge.range_low_pa,
-                                                                         gauge.range_high_pa) for gauge in gauges])
+    assumed = np.array(
+        [
+            DEFAULT_SAMPLE_NOISE_TOLERANCES
+            * gauge.tolerance.at(gauge.range_high_pa, gauge.range_low_pa, gauge.range_high_pa)
+            for gauge in gauges
+        ]
+    )
     pooled = []
     for spell in spells:
         alike = [s for other, s in zip(spells, summaries, strict=True) if other.kind is spell.kind]

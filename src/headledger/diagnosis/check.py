@@ -13,7 +13,7 @@ from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import Finding, list_findings
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.means import SpellMeans
-from headledger.diagnosis.readings import Timeline, read_timeline
+from headledger.diagnosis.readings import read_timeline
 from headledger.diagnosis.result import (
     CauseFound,
     CheckResult,
@@ -120,13 +120,8 @@ def check_job(
         causes=tuple(_cause(model, finding) for finding in findings),
         rejects=tuple(reject for digest in digests for reject in digest.rejects),
         reject_count=sum(digest.reject_count for digest in digests),
-        remarks=(*job.remarks, *_log_remarks(timeline)),
+        remarks=(*job.remarks, *timeline.remarks),
     )
-
-
-def _log_remarks(timeline: Timeline) -> tuple[str, ...]:
-    """What reading the logs in the job's terms took for granted."""
-    return timeline.remarks
 
 
 def _inputs(job: Job, digests: Sequence[Digest]) -> tuple[InputFile, ...]:
@@ -171,15 +166,11 @@ def _spell(model: Model, posterior: Posterior, index: int) -> SpellFound:
     )
 
 
-def _gauge(
-    model: Model, posterior: Posterior, findings: Sequence[Finding], gauge: int, judged: Judged
-) -> GaugeFound:
+def _gauge(model: Model, posterior: Posterior, findings: Sequence[Finding], gauge: int, judged: Judged) -> GaugeFound:
     """One gauge's verdict with its numbers by spell and what it leans on."""
     noun = model.layout.job.gauges[gauge]
     causes = tuple(i for i, f in enumerate(findings) if gauge in f.mark.own)
-    given = tuple(
-        i for i, f in enumerate(findings) if not f.mark.own and (f.kind, f.place) in posterior.leading.keys
-    )
+    given = tuple(i for i, f in enumerate(findings) if not f.mark.own and (f.kind, f.place) in posterior.leading.keys)
     expected: Expected | None = None
     if model_has_reading(model, gauge):
         expected = expected_readings(model, posterior.leading, gauge)
@@ -195,9 +186,7 @@ def _gauge(
         spells=_gauge_spells(model, gauge, judged, expected),
         causes=causes,
         given=given,
-        why=verdict_sentence(
-            noun, judged, [findings[i] for i in causes], [findings[i] for i in given], model.layout.job
-        ),
+        why=verdict_sentence(noun, judged, [findings[i] for i in causes], [findings[i] for i in given]),
     )
 
 

@@ -166,7 +166,9 @@ class Model:
         moving = state.point.flow_m3_s.size > 0
         used = set(state.graph.basis.tolist()) if moving else set()
         meters = [
-            run for run in range(self.layout.run_count) if moving and np.isfinite(spell.flow_m3_s[run]) and run not in used
+            run
+            for run in range(self.layout.run_count)
+            if moving and np.isfinite(spell.flow_m3_s[run]) and run not in used
         ]
         return SpellRows(
             start=start,
@@ -425,7 +427,10 @@ def _first_flows(layout: Layout, spell: SpellMeans) -> Array:
             trial = flows.copy()
             trial[free] += size * step
             loss = _loop_residual(layout, spell, trial)
-            if np.abs(loss[0]).sum() < np.abs(residual).sum() * (1.0 - 1e-4 * size) or np.abs(residual).max() < LOOP_NOISE_M:
+            if (
+                np.abs(loss[0]).sum() < np.abs(residual).sum() * (1.0 - 1e-4 * size)
+                or np.abs(residual).max() < LOOP_NOISE_M
+            ):
                 break
             size /= 2.0
         flows = trial

@@ -115,9 +115,7 @@ def _swaps(posterior: Posterior) -> dict[Key, dict[Key, float]]:
     return swaps
 
 
-def _finding(
-    key: Key, best: Explanation, probability: dict[Key, float], swaps: dict[Key, dict[Key, float]]
-) -> Finding:
+def _finding(key: Key, best: Explanation, probability: dict[Key, float], swaps: dict[Key, dict[Key, float]]) -> Finding:
     """One cause with its size and rivals."""
     index = next(i for i in best.chosen if best.frame.marks[i].key == key)
     size = best.frame.size(best.chosen, index)

@@ -223,9 +223,7 @@ class Layout:
 
     def _differential_column(self, gauge: Gauge, leg: float | None) -> tuple[float, float]:
         """The same for an instrument with two taps."""
-        between = (
-            self.job.station(gauge.station).elevation_m - self.job.station(str(gauge.low_station)).elevation_m
-        )
+        between = self.job.station(gauge.station).elevation_m - self.job.station(str(gauge.low_station)).elevation_m
         if gauge.corrected_to_tap or gauge.corrected_to_m is not None:
             return between, 0.0
         return (0.0, 0.0) if leg is None else (between, leg * self.gravity_m_s2 * between)

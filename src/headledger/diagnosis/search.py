@@ -154,7 +154,9 @@ def _normalised(explanations: list[Explanation]) -> tuple[Explanation, ...]:
     total = float(log_sum(weights))
     ordered = sorted(explanations, key=lambda e: -e.log_weight)
     return tuple(
-        Explanation(chosen=e.chosen, frame=e.frame, log_weight=e.log_weight, probability=float(np.exp(e.log_weight - total)))
+        Explanation(
+            chosen=e.chosen, frame=e.frame, log_weight=e.log_weight, probability=float(np.exp(e.log_weight - total))
+        )
         for e in ordered
     )
 
@@ -176,9 +178,7 @@ def set_log_prior(shares: NDArray[np.float64], prior: CountPrior, chosen: Sequen
     return float(set_log_priors(shares, prior, np.array([chosen], dtype=np.int64))[0])
 
 
-def _weigh(
-    frame: Frame, prior: CountPrior, should_stop: Callable[[], bool] | None
-) -> dict[tuple[int, ...], float]:
+def _weigh(frame: Frame, prior: CountPrior, should_stop: Callable[[], bool] | None) -> dict[tuple[int, ...], float]:
     """Log weight of every set worth listing, by its sorted marks; evidence of none is taken as the zero of the scale."""
     shares = mark_shares(frame.marks)
     weights: dict[tuple[int, ...], float] = {(): set_log_prior(shares, prior, ())}
@@ -188,9 +188,13 @@ def _weigh(
     weights |= _evaluate(frame, shares, prior, singles)
     if prior.most >= 2:
         pairs = _pairs(frame)
-        bound = _pair_bounds(frame, pairs) + set_log_priors(shares, prior, np.array(pairs, dtype=np.int64).reshape(-1, 2))
+        bound = _pair_bounds(frame, pairs) + set_log_priors(
+            shares, prior, np.array(pairs, dtype=np.int64).reshape(-1, 2)
+        )
         floor = max(weights.values()) - KEPT_NATS
-        weights |= _evaluate(frame, shares, prior, [pair for pair, most in zip(pairs, bound, strict=True) if most > floor])
+        weights |= _evaluate(
+            frame, shares, prior, [pair for pair, most in zip(pairs, bound, strict=True) if most > floor]
+        )
     grown: set[tuple[int, ...]] = set()
     while prior.most >= 3 and not (should_stop and should_stop()):
         top = max(weights.values())

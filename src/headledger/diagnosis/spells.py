@@ -256,5 +256,7 @@ def _agrees_as_still(layout: Layout, timeline: Timeline, first: int, last: int) 
         return False
     heads = said[single] - still[single]
     middle = float(np.median(heads))
-    away = [abs(h - middle) / layout.job.gauges[i].tolerance_at(float(said[i])) for h, i in zip(heads, single, strict=True)]
+    away = [
+        abs(h - middle) / layout.job.gauges[i].tolerance_at(float(said[i])) for h, i in zip(heads, single, strict=True)
+    ]
     return float(np.median(away)) < STILL_TOLERANCES

@@ -153,9 +153,7 @@ def evaluate(
         slope_s_m2=slope,
         velocity_pa=velocity,
         head_m=head,
-        reading_pa=layout.taps.readings_pa(
-            head, velocity, density_kg_m3=density, gravity_m_s2=layout.gravity_m_s2
-        ),
+        reading_pa=layout.taps.readings_pa(head, velocity, density_kg_m3=density, gravity_m_s2=layout.gravity_m_s2),
         density_kg_m3=density,
         head_weight_pa_m=density * layout.gravity_m_s2,
     )

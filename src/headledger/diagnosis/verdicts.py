@@ -129,7 +129,9 @@ def own_error(model: Model, explanation: Explanation, gauge: int) -> OwnError | 
     deviation = np.sqrt(np.maximum(np.diag(covariance), 0.0))
     by_spell = np.array(
         [
-            float(weights @ (1.0 - inside_box_probability(mean_pa[:, [k]], covariance[np.ix_([k], [k])], tolerance[[k]])))
+            float(
+                weights @ (1.0 - inside_box_probability(mean_pa[:, [k]], covariance[np.ix_([k], [k])], tolerance[[k]]))
+            )
             for k in range(rows.size)
         ]
     )

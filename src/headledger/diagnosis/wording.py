@@ -2,17 +2,18 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
+from typing import TYPE_CHECKING
 
-import numpy as np
-
-from headledger.diagnosis.estimate import Model
-from headledger.diagnosis.findings import Finding
 from headledger.diagnosis.result import CauseKind, Place, Verdict
-from headledger.diagnosis.verdicts import Judged
-from headledger.plant.gauges import Gauge
-from headledger.plant.job import Job
-from headledger.quantities import Unit
+from headledger.quantities import format_quantity as amount
+
+if TYPE_CHECKING:  # the screen words things before anything heavy is loaded
+    from headledger.diagnosis.estimate import Model
+    from headledger.diagnosis.findings import Finding
+    from headledger.diagnosis.verdicts import Judged
+    from headledger.plant.gauges import Gauge
 
 COMPARABLE = 0.25
 """A rival with at least this part of a cause's own probability is named in its sentence. [-]"""
@@ -52,15 +53,6 @@ KIND_WORDS = {
     CauseKind.DENSITY_ERROR: "a wrong density",
     CauseKind.LEAK: "a leak",
 }
-
-
-def amount(si_value: float, unit: Unit, digits: int = 3) -> str:
-    """A value in a unit, with so many significant digits and never in exponent form."""
-    value = (si_value - unit.offset) / unit.factor
-    if value == 0.0 or not np.isfinite(value):
-        return f"{value:g} {unit.text}"
-    places = max(0, digits - 1 - int(np.floor(np.log10(abs(value)))))
-    return f"{value:.{places}f} {unit.text}"
 
 
 def percent(probability: float) -> str:
@@ -158,11 +150,9 @@ def _loss_statement(model: Model, finding: Finding, at: str, size: float) -> str
     )
 
 
-def verdict_sentence(
-    gauge: Gauge, judged: Judged, causes: Sequence[Finding], given: Sequence[Finding], job: Job
-) -> str:
+def verdict_sentence(gauge: Gauge, judged: Judged, causes: Sequence[Finding], given: Sequence[Finding]) -> str:
     """Why a gauge has its verdict, and what that leans on."""
-    if not np.isfinite(judged.outside_probability):
+    if not math.isfinite(judged.outside_probability):
         return f"{gauge.tag} gave no reading in any spell."
     unit = gauge.unit.as_difference()
     words = VERDICT_WORDS[judged.verdict]

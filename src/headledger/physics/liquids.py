@@ -175,7 +175,9 @@ def glycol_properties(
     table = _tables()[(BY_VOLUME if by_volume else BY_MASS)[kind]]
     _demand("concentration", 100.0 * concentration_fraction, *(100.0 * f for f in table["fractions"]), "%")
     freezing = float(
-        np.interp(concentration_fraction, np.linspace(*table["fractions"], len(table["freezing_k"])), table["freezing_k"])
+        np.interp(
+            concentration_fraction, np.linspace(*table["fractions"], len(table["freezing_k"])), table["freezing_k"]
+        )
     )
     _demand("temperature", temperature_k, max(freezing, table["range_k"][0]), table["range_k"][1], "°C", 273.15)
     x, y = _scaled(concentration_fraction, table["fractions"]), _scaled(temperature_k, table["range_k"])

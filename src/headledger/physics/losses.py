@@ -89,7 +89,10 @@ class LossTable:
         self._pipe = np.where(by_williams, 0.0, length / bore * per_square)
         self._williams = np.where(
             by_williams,
-            HAZEN_WILLIAMS_FACTOR * length / np.where(by_williams, williams, 1.0) ** FLOW_EXPONENT / bore**BORE_EXPONENT,
+            HAZEN_WILLIAMS_FACTOR
+            * length
+            / np.where(by_williams, williams, 1.0) ** FLOW_EXPONENT
+            / bore**BORE_EXPONENT,
             0.0,
         )
         self._square = np.array([run.fittings_k for run in runs]) * per_square
@@ -153,9 +156,7 @@ def head_loss(
     head_m, slope_s_m2 : ndarray, of the shape of `flow_m3_s`
         [m], [s/m²]
     """
-    table = LossTable(
-        [run_loss], density_kg_m3=density_kg_m3, viscosity_pa_s=viscosity_pa_s, gravity_m_s2=gravity_m_s2
-    )
+    table = LossTable([run_loss], density_kg_m3=density_kg_m3, viscosity_pa_s=viscosity_pa_s, gravity_m_s2=gravity_m_s2)
     head, slope = table.evaluate(np.asarray(flow_m3_s, dtype=float)[..., None])
     return head[..., 0], slope[..., 0]
 

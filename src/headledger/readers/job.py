@@ -226,9 +226,7 @@ def _timezone(section: Section) -> ZoneInfo:
         return ZoneInfo("UTC")
 
 
-def _check_links(
-    stations: Sequence[Station], runs: Sequence[Run], gauges: Sequence[Gauge], problems: Problems
-) -> None:
+def _check_links(stations: Sequence[Station], runs: Sequence[Run], gauges: Sequence[Gauge], problems: Problems) -> None:
     """Names told twice, names of nothing, and stations that no run reaches."""
     for file, what, names in (
         ("stations.csv", "station", [s.name for s in stations]),
@@ -284,7 +282,9 @@ def _with_exchange(station: Station, runs: Sequence[Run]) -> Station:
 def _display(length: Unit | None, runs: Sequence[Run], gauges: Sequence[Gauge]) -> DisplayUnits:
     """The units in which the job's own files speak."""
     plain = DisplayUnits()
-    flow = next((run.flow_unit for run in runs if run.flow_unit and run.flow_unit.dimension is Dimension.FLOW), plain.flow)
+    flow = next(
+        (run.flow_unit for run in runs if run.flow_unit and run.flow_unit.dimension is Dimension.FLOW), plain.flow
+    )
     common = Counter(gauge.unit.as_difference() for gauge in gauges if gauge.unit.kind is not PressureKind.DIFFERENCE)
     pressure = common.most_common(1)[0][0] if common else plain.pressure
     if length is None:

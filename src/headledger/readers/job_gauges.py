@@ -85,7 +85,9 @@ def read_gauges(
         middle = (gauge.range_low_pa + gauge.range_high_pa) / 2.0
         allowed = gauge.accuracy.at(middle, gauge.range_low_pa, gauge.range_high_pa)
         if gauge.tolerance_at(middle) < 0.999 * allowed:
-            remarks.append(f"{gauge.tag}: its tolerance ({gauge.tolerance.text}) is tighter than its accuracy ({gauge.accuracy.text}).")
+            remarks.append(
+                f"{gauge.tag}: its tolerance ({gauge.tolerance.text}) is tighter than its accuracy ({gauge.accuracy.text})."
+            )
     return gauges, remarks
 
 
@@ -161,7 +163,12 @@ def _range(row: Row, *, differential: bool) -> _Range | None:
     if low is None or high is None:
         return None
     if high <= low:
-        row.fault("range high", "the range is turned round or empty", f"{low:g} to {high:g} {text}", "a high end above the low end")
+        row.fault(
+            "range high",
+            "the range is turned round or empty",
+            f"{low:g} to {high:g} {text}",
+            "a high end above the low end",
+        )
         return None
     return _Range(unit, float(unit.to_si(low)), float(unit.to_si(high)))
 
@@ -231,7 +238,9 @@ def _sealed(row: Row, unit: Unit) -> float | None:
     if text == "sealed":
         return STANDARD_ATMOSPHERE_PA
     try:
-        return parse_quantity(text.removeprefix("sealed at").strip(), Dimension.PRESSURE, default_kind=PressureKind.ABSOLUTE)
+        return parse_quantity(
+            text.removeprefix("sealed at").strip(), Dimension.PRESSURE, default_kind=PressureKind.ABSOLUTE
+        )
     except QuantityError:
         row.fault("reference", "unknown reference", row.text("reference"), "vented, sealed, or sealed at 95.0 kPa")
         return None
@@ -276,4 +285,3 @@ def _moment(row: Row, column: str) -> datetime | None:
         row.fault(column, "not a time", text, "2026-03-02T08:00:00Z")
         return None
     return found if found.tzinfo else found.replace(tzinfo=UTC)
-

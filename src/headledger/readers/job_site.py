@@ -36,14 +36,21 @@ class SpellContext:
 
 def _spell_columns(runs: Mapping[str, Run]) -> dict[str, Column]:
     """Every column that spells.csv may hold for these runs."""
-    columns = {"start": Column(required=True), "end": Column(required=True), "kind": Column(required=True), "note": Column()}
+    columns = {
+        "start": Column(required=True),
+        "end": Column(required=True),
+        "kind": Column(required=True),
+        "note": Column(),
+    }
     for name in runs:
         columns[f"flow {name}"] = Column(dimension=Dimension.FLOW)
         columns[f"flow {name} uncertainty"] = Column()
     return columns
 
 
-def read_spells(path: Path, file: str, sheet: str | None, context: SpellContext, problems: Problems) -> list[StatedSpell]:
+def read_spells(
+    path: Path, file: str, sheet: str | None, context: SpellContext, problems: Problems
+) -> list[StatedSpell]:
     """Stated spells, in the order of the table."""
     table = read_table(path, file, _spell_columns(context.runs), problems, sheet=sheet)
     spells = []
@@ -120,7 +127,9 @@ def read_levels(
         distance, elevation = row.positive("distance", zero=True), row.quantity("elevation")
         if distance is None or elevation is None:
             continue
-        side = {"centreline": 0.0, "invert": 0.5, "crown": -0.5}[row.choice("level of", ("centreline", "invert", "crown"))]
+        side = {"centreline": 0.0, "invert": 0.5, "crown": -0.5}[
+            row.choice("level of", ("centreline", "invert", "crown"))
+        ]
         doubt = row.positive("uncertainty", zero=True)
         points.append(
             LevelPoint(

@@ -225,7 +225,11 @@ def _pump(row: Row) -> PumpCurve | None:
             row.fault("pump curve", "needs its units", text, "pump flow unit and pump head unit, such as m3/h and m")
         return None
     try:
-        pairs = [tuple(parse_number(n.replace(",", ".")) for n in pair.split(":")) for pair in text.split(";") if pair.strip()]
+        pairs = [
+            tuple(parse_number(n.replace(",", ".")) for n in pair.split(":"))
+            for pair in text.split(";")
+            if pair.strip()
+        ]
         if len(pairs) < 2 or any(len(pair) != 2 for pair in pairs):
             raise QuantityError("not a pump curve", text, "two pairs or more")
     except QuantityError:
@@ -246,9 +250,7 @@ def _with_meter(row: Row, run: Run, defaults: Defaults) -> Run:
     unit = _unit(row, "flow unit", PRESSURE if kvs is not None else FLOW, PressureKind.DIFFERENCE)
     if not row.text("flow unit"):
         row.fault("flow unit", "is blank", "", "the unit of the flow column, such as m3/h")
-    return replace(
-        run, flow_column=column, flow_unit=unit, flow_kvs_m3_s=kvs, flow_doubt=_flow_doubt(row, defaults)
-    )
+    return replace(run, flow_column=column, flow_unit=unit, flow_kvs_m3_s=kvs, flow_doubt=_flow_doubt(row, defaults))
 
 
 def _flow_doubt(row: Row, defaults: Defaults) -> Doubt:

@@ -101,4 +101,3 @@ def fittings_k(text: str) -> float:
             raise QuantityError("not a fitting of the table", repr(part.strip()), expected)
         total += int(match[1] or 1) * FITTINGS_K[known]
     return total
-

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -24,10 +25,13 @@ class Column:
     dimension : Dimension or None
         Of a quantity whose unit stands in the header; None for text.
     required : bool
+    kind : PressureKind
+        Of a pressure; its header may say no other.
     """
 
     dimension: Dimension | None = None
     required: bool = False
+    kind: PressureKind = PressureKind.DIFFERENCE
 
 
 @dataclass(slots=True)
@@ -83,6 +87,10 @@ class Row:
         text = self.text(column)
         if not text:
             return None
+        if self.table.commas_seen and re.fullmatch(r"[-+]?[1-9]\d{0,2}\.\d{3}", text):
+            either = f"{text.replace('.', '')} or {text.replace('.', ',')}"
+            self.fault(column, "the point may mark thousands or decimals", text, either)
+            return None
         try:
             return parse_number(text, decimal_comma=self.table.decimal_comma)
         except QuantityError as error:
@@ -99,7 +107,8 @@ class Row:
         """A quantity that must be positive (or zero where `zero`), None where blank or faulty."""
         value = self.quantity(column) if column in self.table.units else self.number_of(column)
         if value is not None and (value < 0.0 or (value == 0.0 and not zero)):
-            self.fault(column, "must not be negative" if zero else "must be positive", self.text(column))
+            found = f"{self.text(column)} {self.table.unit_text(column)}".rstrip()
+            self.fault(column, "must not be negative" if zero else "must be positive", found)
             return None
         return value
 
@@ -109,9 +118,8 @@ class Row:
         if not text:
             return choices[0]
         if text not in choices:
-            close = nearest(text, choices)
-            hint = " or ".join(choices) + (f"; did you mean {close}?" if close else "")
-            self.fault(column, "unknown word", self.text(column), hint)
+            words = " or ".join(choice or "a blank cell" for choice in choices)
+            self.fault(column, "unknown word", self.text(column), nearest(text, choices) or words)
             return choices[0]
         return text
 
@@ -123,11 +131,17 @@ class Table:
     Parameters
     ----------
     file : str
+    problems : Problems
+        Where faults are noted.
     units : dict of str to Unit
         Of the quantity columns present.
     rows : list of Row
+    columns : tuple of str
+        In the order of the file; empty where the header cannot be used.
     decimal_comma : bool
-    problems : Problems
+        Whether a comma may mark decimals.
+    commas_seen : bool
+        Whether some cell does use it so.
     """
 
     file: str
@@ -136,26 +150,39 @@ class Table:
     rows: list[Row] = field(default_factory=list)
     columns: tuple[str, ...] = ()
     decimal_comma: bool = False
+    commas_seen: bool = False
+
+    def unit_text(self, column: str) -> str:
+        """The unit of a column as its header writes it, empty where it has none."""
+        unit = self.units.get(column)
+        return unit.text if unit else ""
 
 
 def decode(raw: bytes, file: str) -> str:
-    """Text of a file in UTF-8, UTF-16 or Latin-1.
+    """Text of a file in UTF-8, UTF-16 or, failing these, Latin-1 in the variant of Windows.
 
     Raises
     ------
     JobError
-        Empty or binary.
+        Empty, binary or damaged.
     """
     if not raw:
-        raise JobError([Problem(file, "the file is empty", "0 bytes", "a table with a header row")])
+        raise JobError([Problem(file, "the file is empty", "0 bytes", "text")])
     if raw[:2] in (b"\xff\xfe", b"\xfe\xff"):
-        return raw.decode("utf-16", errors="replace")
+        try:
+            return raw.decode("utf-16")
+        except UnicodeDecodeError as error:
+            fault = f"is marked as UTF-16 and cannot be read as such from byte {error.start} on"
+            raise JobError([Problem(file, fault, "", "a file saved again as UTF-8")]) from None
     if b"\x00" in raw:
-        raise JobError([Problem(file, "the file is binary", "zero bytes", "a text file (CSV)")])
-    try:
-        return raw.decode("utf-8-sig")
-    except UnicodeDecodeError:
-        return raw.decode("latin-1")
+        expected = "a text file; a table in a workbook is named as plant.xlsx#sheet"
+        raise JobError([Problem(file, "the file is binary", "zero bytes", expected)])
+    for encoding in ("utf-8-sig", "cp1252"):
+        try:
+            return raw.decode(encoding)
+        except UnicodeDecodeError:
+            continue
+    return raw.decode("latin-1")
 
 
 def read_table(
@@ -169,7 +196,7 @@ def read_table(
     file : str
         As it is named in messages.
     columns : mapping of str to Column
-        Every column that the table may hold; a name ending in ``*`` matches any text in its place.
+        Every column that the table may hold.
     problems : Problems
         Where faults are noted.
     sheet : str, optional
@@ -182,7 +209,7 @@ def read_table(
     """
     table = Table(file=file, problems=problems)
     try:
-        rows = _workbook_rows(path, sheet) if sheet is not None else _csv_rows(path, file, table)
+        rows = _workbook_rows(path, file, sheet) if sheet is not None else _csv_rows(path, file, table)
     except JobError as error:
         problems.found += error.problems
         return table
@@ -193,14 +220,18 @@ def read_table(
     if not body:
         problems.add(file, "the table is empty", "", "a header row and one row or more")
         return table
-    names = _match_headers(table, body[0][1], columns)
+    number, header = body[0]
+    names = _match_headers(table, number, header, columns)
     for number, cells in body[1:]:
-        if len(cells) > len(names) and any(cell.strip() for cell in cells[len(names) :]):
+        if any(cell.strip() for cell in cells[len(names) :]):
             problems.add(f"{file}, row {number}", "has more cells than the header", str(len(cells)), str(len(names)))
         values = {name: cell.strip() for name, cell in zip(names, cells, strict=False) if name}
         table.rows.append(Row(table, number, values))
     if not table.rows:
         problems.add(file, "holds no rows", "only a header", "one row or more")
+    table.commas_seen = table.decimal_comma and any(
+        re.fullmatch(r"[-+]?\d+,\d+", cell) for row in table.rows for cell in row.cells.values()
+    )
     return table
 
 
@@ -213,21 +244,26 @@ def _csv_rows(path: Path, file: str, table: Table) -> list[list[str]]:
     delimiter = max((",", ";", "\t", "|"), key=header.count)
     table.decimal_comma = delimiter == ";"
     csv.field_size_limit(1_000_000)
+    rows = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter, strict=True)
     try:
-        return list(csv.reader(io.StringIO(text, newline=""), delimiter=delimiter))
+        return list(rows)
     except csv.Error as error:
-        raise JobError([Problem(file, "cannot be read as a table", str(error), "CSV")]) from None
+        fault = f"cannot be read as a table ({error})"
+        raise JobError([Problem(f"{file}, line {rows.line_num}", fault, "", "quotation marks in pairs")]) from None
 
 
-def _workbook_rows(path: Path, sheet: str) -> list[list[str]]:
+def _workbook_rows(path: Path, file: str, sheet: str) -> list[list[str]]:
     """Cells of a sheet of a workbook, as text."""
     import python_calamine
 
     try:
         book = python_calamine.CalamineWorkbook.from_path(str(path))
-        cells = book.get_sheet_by_name(sheet).to_python(skip_empty_area=False)
     except (python_calamine.CalamineError, OSError) as error:
-        raise JobError([Problem(f"{path.name}#{sheet}", "cannot be read", str(error), "a sheet of a workbook")]) from None
+        raise JobError([Problem(file, "is no workbook that can be read", str(error), "an .xlsx file")]) from None
+    if sheet not in book.sheet_names:
+        expected = nearest(sheet, book.sheet_names) or "one of " + ", ".join(book.sheet_names)
+        raise JobError([Problem(file, "there is no such sheet", sheet, expected)])
+    cells = book.get_sheet_by_name(sheet).to_python(skip_empty_area=False)
 
     def text(cell: object) -> str:
         return f"{cell:.15g}" if isinstance(cell, float) else str(cell)
@@ -235,62 +271,57 @@ def _workbook_rows(path: Path, sheet: str) -> list[list[str]]:
     return [[text(cell) for cell in row] for row in cells]
 
 
-def _match_headers(table: Table, header: Sequence[str], columns: Mapping[str, Column]) -> list[str]:
-    """The house's names of a table's columns, empty for unnamed ones; notes what is unknown, missing or told twice."""
+def _match_headers(table: Table, number: int, header: Sequence[str], columns: Mapping[str, Column]) -> list[str]:
+    """The house's names of a table's columns, empty for unknown ones; notes what is unknown, missing or told twice."""
+    place = f"{table.file}, row {number}"
+    by_folded = {known.casefold(): known for known in columns}
     names: list[str] = []
     for text in header:
         name, unit = split_header(text)
-        known = _known(name, columns)
-        if not name:
-            names.append("")
-            continue
-        if known is None:
-            close = nearest(name, columns)
-            expected = f"did you mean {close}?" if close else "one of " + ", ".join(columns)
-            table.problems.add(f"{table.file}, header", "unknown column", name, expected)
-            names.append("")
-            continue
-        actual = name.casefold() if known.endswith("*") else known
-        if actual in names:
-            table.problems.add(f"{table.file}, header", "column given twice", name)
-        names.append(actual)
-        _note_unit(table, actual, unit, columns[known])
+        known = by_folded.get(" ".join(name.casefold().split()), "")
+        if name and not known:
+            expected = nearest(name, columns) or "one of " + ", ".join(columns)
+            table.problems.add(place, "unknown column", name, expected)
+        if known and known in names:
+            table.problems.add(f"{place}, {known}", "this column stands twice", text.strip(), "one column of this name")
+            known = ""
+        names.append(known)
+        if known:
+            _note_unit(table, f"{place}, {known}", known, unit, columns[known])
     for name, column in columns.items():
         if column.required and name not in names:
-            given = " [unit]" if column.dimension else ""
-            table.problems.add(f"{table.file}, header", "required column is missing", "", f"a column {name}{given}")
-    table.columns = tuple(names)
+            example = f"{name} [{_EXAMPLE_UNITS[column.dimension]}]" if column.dimension else name
+            table.problems.add(place, "a required column is missing", "", f"a column {example}")
+    table.columns = tuple(name for name in names if name)
     return names
 
 
-def _known(name: str, columns: Mapping[str, Column]) -> str | None:
-    """The column that a header's name means."""
-    folded = " ".join(name.casefold().split())
-    for known in columns:
-        if known.casefold() == folded or (known.endswith("*") and _fits(known, folded)):
-            return known
-    return None
+_EXAMPLE_UNITS: dict[Dimension, str] = {
+    Dimension.LENGTH: "m",
+    Dimension.PRESSURE: "kPa",
+    Dimension.FLOW: "m3/h",
+    Dimension.TEMPERATURE: "degC",
+    Dimension.TIME: "s",
+}
 
 
-def _fits(pattern: str, name: str) -> bool:
-    """Whether a name fits a pattern whose one ``*`` stands for any text (a pattern's own ``*`` is its last character)."""
-    head, tail = pattern[:-1].split("…") if "…" in pattern else (pattern[:-1], "")
-    return name.startswith(head) and name.endswith(tail) and len(name) > len(head) + len(tail)
-
-
-def _note_unit(table: Table, name: str, unit: str | None, column: Column) -> None:
+def _note_unit(table: Table, place: str, name: str, unit: str | None, column: Column) -> None:
     """Understand a header's unit."""
-    place = f"{table.file}, header, {name}"
     if column.dimension is None:
         if unit is not None:
-            table.problems.add(place, "this column takes no unit", f"[{unit}]", f"{name} alone")
+            table.problems.add(place, "this column takes no unit", f"{name} [{unit}]", name)
         return
     if unit is None:
-        example = {"length": "m", "pressure": "kPa", "flow": "m3/h", "temperature": "degC", "time": "s"}
-        hint = f"{name} [{example.get(column.dimension, 'unit')}]"
-        table.problems.add(place, "the unit is missing", name, hint)
+        table.problems.add(place, "the unit is missing", name, f"{name} [{_EXAMPLE_UNITS[column.dimension]}]")
         return
     try:
-        table.units[name] = parse_unit(unit, column.dimension, default_kind=PressureKind.DIFFERENCE)
+        found = parse_unit(unit, column.dimension, default_kind=column.kind)
     except QuantityError as error:
         table.problems.add(place, error.fault, error.found, error.expected)
+        return
+    if column.dimension is Dimension.PRESSURE and found.kind is not column.kind:
+        plain = found.as_difference().text
+        fault = f"of the wrong kind, {found.kind} and not {column.kind}"
+        table.problems.add(place, fault, f"{name} [{unit}]", f"{name} [{plain}]")
+        return
+    table.units[name] = found

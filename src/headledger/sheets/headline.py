@@ -6,6 +6,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
 from headledger.diagnosis.result import CauseFound, CauseKind, CheckResult, Place, Rival, Verdict
+from headledger.diagnosis.wording import COMPARABLE, kind_words
 from headledger.sheets.numbers import percent
 from headledger.sheets.outcome import CLEAN_FLOOR, Outcome, outcome_of
 
@@ -176,10 +177,12 @@ def _what_next(result: CheckResult, leaders: Sequence[CauseFound]) -> tuple[str,
 
 def _next_of(cause: CauseFound) -> str:
     if cause.accepted or not cause.rivals:
-        return f"At {place_label(cause.place)}: see to the {cause.kind.value}, then log and check again."
-    names = list(dict.fromkeys([cause.kind.value, *(rival.kind.value for rival in cause.rivals)]))
+        return f"At {place_label(cause.place)}: see to {kind_words(cause.kind)}, then log and check again."
+    near = [rival for rival in cause.rivals if rival.probability >= COMPARABLE * cause.probability] or cause.rivals[:1]
+    kinds = [kind_words(cause.kind), *(kind_words(rival.kind) for rival in near)]
+    names = list(dict.fromkeys(kinds))
     if len(names) == 1:
-        places = [place_label(place) for place in (cause.place, *(rival.place for rival in cause.rivals))]
+        places = [place_label(place) for place in (cause.place, *(rival.place for rival in near))]
         return f"Find out on site where the {names[0]} is: {_listed(places, last='or')}."
     return f"Find out on site whether it is {_listed(names, last='or')}."
 

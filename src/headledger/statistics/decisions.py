@@ -68,7 +68,9 @@ def inside_box_probability(mean: Array, covariance: Array, limit: Array) -> Arra
     slope = covariance[0, 1] / deviation[0] ** 2
     rest = np.sqrt(max(covariance[1, 1] - slope * covariance[0, 1], (1e-9 * limit[1]) ** 2))
     centre = mean[:, [1]] + slope * (first - mean[:, [0]])
-    return np.asarray(np.clip((half[:, None] * weight * density * _between(centre, rest, limit[1])).sum(axis=1), 0.0, 1.0))
+    return np.asarray(
+        np.clip((half[:, None] * weight * density * _between(centre, rest, limit[1])).sum(axis=1), 0.0, 1.0)
+    )
 
 
 @lru_cache(maxsize=1)

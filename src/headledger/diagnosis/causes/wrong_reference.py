@@ -20,11 +20,7 @@ def marks(view: View) -> list[Mark]:
         vector = view.gauge_vector(index, 1.0)
         least = view.least_size(vector)
         sealed = abs(barometer - SEALED_PA)
-        forms = [
-            (form, size)
-            for form, size in (("barometer", barometer), ("sealed", sealed))
-            if size - doubt > least
-        ]
+        forms = [(form, size) for form, size in (("barometer", barometer), ("sealed", sealed)) if size - doubt > least]
         for form, size in forms:
             found.append(
                 Mark(
