@@ -237,34 +237,38 @@ def _numbers(cells: Sequence[str | None], shape: LogShape) -> Array:
     return numbers
 
 
-def cells_of_values(column: Ints, index: Ints, values: Array) -> Cells:
-    """Statistics of values by column and block.
+def cells_of_column(column: int, index: Ints, values: Array) -> Cells:
+    """Statistics of one column's values by block.
 
     Parameters
     ----------
-    column, index : ndarray of int64
-        Column and block of each value, in order of column and then of block.
+    column : int
+    index : ndarray of int64
+        Block of each value, never falling.
     values : ndarray of float
-        In order of time within each column; at least one.
+        In order of time; at least one.
     """
     size = values.size
     begins = np.ones(size, dtype=bool)
-    begins[1:] = (index[1:] != index[:-1]) | (column[1:] != column[:-1])
+    np.not_equal(index[1:], index[:-1], out=begins[1:])
     starts = np.flatnonzero(begins)
-    count = np.diff(np.append(starts, size))
+    count = np.diff(starts, append=size)
     ends = starts + count - 1
     step = np.zeros(size)
     with np.errstate(over="ignore", invalid="ignore"):
         mean = np.add.reduceat(values, starts) / count
-        step[1:] = np.where(begins[1:], 0.0, values[1:] - values[:-1])
+        np.subtract(values[1:], values[:-1], out=step[1:])
+        step[starts] = 0.0
         apart = values - np.repeat(mean, count)
-        square_sum, step_sum = (np.add.reduceat(part**2, starts) for part in (apart, step))
-    runs = np.flatnonzero(begins | (step != 0.0))
-    lengths = np.diff(np.append(runs, size))
+        square_sum, step_sum = np.add.reduceat(apart * apart, starts), np.add.reduceat(step * step, starts)
+    changes = step != 0.0
+    changes[starts] = True
+    runs = np.flatnonzero(changes)
+    lengths = np.diff(runs, append=size)
     first_run = np.searchsorted(runs, starts)
-    last_run = np.append(first_run[1:], runs.size)[: starts.size] - 1
+    last_run = np.append(first_run[1:], runs.size) - 1
     return Cells(
-        column=column[starts],
+        column=np.full(starts.size, column, dtype=np.int64),
         index=index[starts],
         count=count,
         mean=mean,
@@ -292,16 +296,15 @@ class Gathering:
         self._held = 0
         self._most_held = 500_000
 
-    def add(self, row_s: Array, column: Ints, value_s: Array, values: Array, interval_s: float) -> None:
+    def add(self, row_s: Array, columns: Sequence[tuple[int, Array, Array]], interval_s: float) -> None:
         """Take some rows and their values into account.
 
         Parameters
         ----------
         row_s : ndarray of float
             Times of the rows, in order. [s]
-        column : ndarray of int64
-        value_s, values : ndarray of float
-            Of each value, in order of column and time. [s], in the log's unit
+        columns : sequence of (int, ndarray of float, ndarray of float)
+            Number of a column, times of its values in order, and the values. [s], in the log's unit
         interval_s : float
             Between rows; decides the first width. [s]
         """
@@ -309,14 +312,17 @@ class Gathering:
             # A hair wider, for stamps that carry the rounding of a float.
             self.width_s = float(2.0 ** np.floor(np.log2(interval_s * (1.0 + 1e-6))))
         at = np.floor(row_s / self.width_s).astype(np.int64)
-        doublings = self._fit(at)
-        at = at >> doublings
+        at = at >> self._fit(at)
         self.index, inverse = np.unique(np.concatenate([self.index, at]), return_inverse=True)
         weights = np.concatenate([self.rows, np.ones(at.size, dtype=np.int64)])
         self.rows = np.bincount(inverse, weights, self.index.size).astype(np.int64)
-        if values.size:
-            block = np.floor(value_s / self.width_s).astype(np.int64)
-            self._parts.append(cells_of_values(column, block, values))
+        cells = [
+            cells_of_column(column, at if time_s is row_s else np.floor(time_s / self.width_s).astype(np.int64), values)
+            for column, time_s, values in columns
+            if values.size
+        ]
+        if cells:
+            self._parts.append(joined(cells))
             self._held += self._parts[-1].index.size
         if len(self._parts) > 1 and self._held > self._most_held:
             self._parts = [self.cells()]

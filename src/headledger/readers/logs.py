@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field
 from datetime import UTC, tzinfo
 from pathlib import Path
@@ -313,8 +313,13 @@ class _Reading:
             kept = kept[np.argsort(seconds[kept], kind="stable")]
         times = seconds[kept]
         values = values[:, kept] if kept.size < seconds.size or (np.diff(kept) != 1).any() else values
-        column, at = np.nonzero(~np.isnan(values))
-        self._add(times, column, times[at], values[column, at], times)
+        held = ~np.isnan(values)
+        whole: Bools = np.all(held, axis=1)
+        columns = [
+            (column, times, row) if whole[column] else (column, times[held[column]], row[held[column]])
+            for column, row in enumerate(values)
+        ]
+        self._add(times, columns, times)
 
     def _take_long(
         self, rows: Rows, seconds: Array, values: Array, wrong: list[tuple[int, int, str]], notes: list[_Note]
@@ -337,7 +342,12 @@ class _Reading:
         stamps = np.unique(seconds[kept])
         again, _ = self.seen.setdefault(-1, _Seen()).look(stamps)
         apart = np.where(np.diff(column[kept]) == 0, np.diff(seconds[kept]), np.nan)
-        self._add(stamps[~again], column[held], seconds[held], values[0, held], stamps, apart)
+        columns = [
+            (int(key), seconds[rows_of], values[0, rows_of])
+            for key in np.unique(column[held])
+            for rows_of in (held[column[held] == key],)
+        ]
+        self._add(stamps[~again], columns, stamps, apart)
 
     def _tags(self, rows: Rows, seconds: Array, notes: list[_Note]) -> Ints:
         """Column of each row by its tag, -1 where it has none; new tags become new columns."""
@@ -378,7 +388,7 @@ class _Reading:
         return _Note(int(rows.lines[row]), position, self.columns[column], (rows, row), why)
 
     def _add(
-        self, row_s: Array, column: Ints, value_s: Array, values: Array, stamps: Array, apart: Array | None = None
+        self, row_s: Array, columns: Sequence[tuple[int, Array, Array]], stamps: Array, apart: Array | None = None
     ) -> None:
         """Hand rows and values on to the blocks."""
         if stamps.size == 0:
@@ -388,7 +398,7 @@ class _Reading:
             steps = np.diff(stamps) if apart is None else apart
             steps = steps[steps > 0.0]
             self.interval_s = float(np.median(steps)) if steps.size else 1.0
-        self.gathering.add(row_s, column, value_s, values, self.interval_s)
+        self.gathering.add(row_s, columns, self.interval_s)
 
     def _file(self, notes: list[_Note]) -> None:
         """Count the rejects of a block, and keep the first of them one by one."""
