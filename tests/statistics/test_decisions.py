@@ -15,7 +15,7 @@ def test_conformity_probability_one_sided_matches_jcgm_106() -> None:
 
 
 @pytest.mark.parametrize(
-    "guard_in_expanded, false_accept", [(3.0, 9.9e-10), (1.5, 0.00135), (1.0, 0.02275), (0.83, 0.04846), (0.0, 0.5)]
+    ("guard_in_expanded", "false_accept"), [(3.0, 9.9e-10), (1.5, 0.00135), (1.0, 0.02275), (0.83, 0.04846), (0.0, 0.5)]
 )
 def test_conformity_probability_at_a_guarded_limit_matches_ilac_g8(
     guard_in_expanded: float, false_accept: float

@@ -50,7 +50,7 @@ def vdi_case(widen: bool) -> tuple[NDArray[np.float64], NDArray[np.float64], NDA
     for row, terms in enumerate(VDI["balances"]):
         for name, factor in terms.items():
             balances[row, names.index(name)] = factor
-    return np.array(VDI["measured"]), np.linalg.cholesky(covariance), balances
+    return np.array(VDI["measured"]), np.asarray(np.linalg.cholesky(covariance), dtype=np.float64), balances
 
 
 def test_whiten_vdi_2048_example_gives_its_reconciled_values_to_all_printed_decimals() -> None:

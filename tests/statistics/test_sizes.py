@@ -24,7 +24,9 @@ def gain_by_grid(prior: SizePrior, a: float, b: float) -> float:
     return float(log_sum(weight + b * size - 0.5 * a * size**2))
 
 
-@pytest.mark.parametrize("a, b", [(0.38, 6.0), (0.38, -6.0), (0.01, 0.1), (100.0, 1500.0), (100.0, -30.0), (1e-3, 0.0)])
+@pytest.mark.parametrize(
+    ("a", "b"), [(0.38, 6.0), (0.38, -6.0), (0.01, 0.1), (100.0, 1500.0), (100.0, -30.0), (1e-3, 0.0)]
+)
 @pytest.mark.parametrize("negative", [True, False])
 def test_log_gain_of_one_cause_equals_a_fine_grid(a: float, b: float, negative: bool) -> None:
     prior = SizePrior(least=1.8, most=600.0, negative=negative)
@@ -48,7 +50,7 @@ def test_log_gain_of_two_causes_equals_a_fine_grid(seed: int) -> None:
 
 
 def test_size_posterior_with_a_sharp_mark_is_the_least_squares_size() -> None:
-    """a = 10,000 and b/a = 3: a standard deviation of 0.01, over which the log-uniform prior tilts the mean by sd²/size."""
+    """A = 10,000 and b/a = 3: a standard deviation of 0.01, over which the log-uniform prior tilts the mean by sd²/size."""
     posterior = size_posterior(SizePriors.of([SizePrior(least=0.1, most=50.0)]), np.array([[1e4]]), np.array([3e4]))
     assert posterior.mean == pytest.approx(3.0 - 0.01**2 / 3.0, abs=1e-6)
     assert posterior.sd == pytest.approx(0.01, rel=1e-3)

@@ -133,9 +133,10 @@ def read_hand_calculation(given: Mapping[str, Any]) -> HandCalculation:
 
 def _point(options: QuantityOptions, end: str, bore_m: float | None) -> Point:
     name = f"{end}_bore"
+    own_bore_m = bore_m
     if options.text(name) == FREE_SURFACE:
         own_bore_m = None
-    else:
+    elif options.text(name):
         own_bore_m = options.si(name, Dimension.LENGTH, above_zero=True) or bore_m
     return Point(elevation_m=options.si(f"{end}_elevation", Dimension.LENGTH) or 0.0, bore_m=own_bore_m)
 

@@ -48,7 +48,7 @@ def spell_means(layout: Layout, timeline: Timeline, spells: tuple[Spell, ...]) -
     """
     summaries = [_summary(layout, timeline, spell) for spell in spells]
     noise = _pooled_noise(layout, spells, summaries)
-    found = []
+    found: list[SpellMeans] = []
     for spell, summary, noise_pa in zip(spells, summaries, noise, strict=True):
         if np.isfinite(summary.mean_pa).any():
             found.append(_means(layout, timeline, spell, summary, noise_pa, len(found) + 1))

@@ -65,7 +65,7 @@ class SpellRows:
     @property
     def count(self) -> int:
         """Number of rows."""
-        return self.gauges.size + self.meters.size + self.levels.size + self.loops
+        return len(self.gauges) + len(self.meters) + len(self.levels) + self.loops
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

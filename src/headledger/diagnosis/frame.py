@@ -12,7 +12,7 @@ from headledger.diagnosis.causes import MAKERS
 from headledger.diagnosis.causes.base import Mark, View
 from headledger.diagnosis.estimate import Linear, Model
 from headledger.diagnosis.means import SpellMeans
-from headledger.diagnosis.result import CauseKind
+from headledger.diagnosis.result import CauseKind, Place
 from headledger.diagnosis.state import Applied, Point
 from headledger.statistics.sizes import NODES, SizePosterior, SizePriors, log_gain, size_posterior
 
@@ -74,7 +74,7 @@ class Frame:
             if free.shape[1]:
                 product = self.product[free] - np.einsum("sij,sj->si", _block(self.gram, free, fixed), sizes)
                 out[rows] += log_gain(priors[free], _block(self.gram, free, free), product, count)
-        return out
+        return np.asarray(out)
 
     def log_gain(self, chosen: Sequence[int]) -> float:
         """Log evidence of one set of marks against none."""
@@ -199,7 +199,11 @@ def _applied_size(mark: Mark, frame: Frame, applied: Applied) -> float:
 
 
 def _frame_at(
-    model: Model, points: Sequence[Point], wanted: Sequence[tuple[object, str]], before: Sequence[Mark], sizes: Array
+    model: Model,
+    points: Sequence[Point],
+    wanted: Sequence[tuple[tuple[CauseKind, Place], str]],
+    before: Sequence[Mark],
+    sizes: Array,
 ) -> tuple[Frame, tuple[int, ...]]:
     """Frame of an explanation's marks at its points, with the causes that bend the hydraulics applied at their sizes."""
     density, meters, names = 1.0, {}, []
@@ -215,7 +219,7 @@ def _frame_at(
     linear = model.linearise(points, applied=applied)
     kinds = {mark.kind for mark in before}
     made = {(mark.key, mark.form): mark for mark in all_marks(View(model, linear), kinds)}
-    marks = [replace(made.get(key, old), prior=old.prior) for key, old in zip(wanted, before, strict=True)]  # type: ignore[call-overload]
+    marks = [replace(made.get(key, old), prior=old.prior) for key, old in zip(wanted, before, strict=True)]
     offset = np.zeros(linear.row_count)
     frame = make_frame(linear, marks)
     for mark in marks:

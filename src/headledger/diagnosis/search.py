@@ -217,7 +217,7 @@ def _compatible(frame: Frame) -> NDArray[np.bool_]:
     rescaled = scale[:, None] & scale[None, :] & (gauge[:, None] == gauge[None, :])
     length = np.sqrt(np.diag(frame.gram))
     parallel = np.abs(frame.gram) > PARALLEL * np.outer(length, length)
-    return (key[:, None] != key[None, :]) & ~parallel & ~rescaled
+    return np.asarray((key[:, None] != key[None, :]) & ~parallel & ~rescaled)
 
 
 def _pairs(frame: Frame) -> list[tuple[int, ...]]:

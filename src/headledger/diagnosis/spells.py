@@ -7,6 +7,7 @@ state to the next, is left out. A slow change of all heads together is no bar: t
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -108,7 +109,7 @@ def _found(layout: Layout, timeline: Timeline, first: int, last: int) -> list[Sp
     pieces = _pieces(first, last)
     signal = _signal(layout, timeline, pieces)
     cuts = best_cuts(signal, penalty=12.0 + 4.0 * signal.shape[1])
-    spans = [(pieces[a], pieces[b]) for a, b in zip(cuts[:-1], cuts[1:], strict=True)]
+    spans = [(pieces[a], pieces[b]) for a, b in pairwise(cuts)]
     spans = [span for span in spans if _is_settled(layout, timeline, span)]
     if not spans:
         return []
@@ -177,7 +178,7 @@ def _scale(values: Array, noticed: float) -> float:
         return max(noticed, 1e-12)
     # 0.6745 √2: a normal difference's median size (robust scale of first differences)
     noise = float(np.median(np.abs(np.diff(values)))) / (0.6745 * np.sqrt(2.0))
-    return max(2.0 * noise, noticed, 1e-12)
+    return float(max(2.0 * noise, noticed, 1e-12))
 
 
 def _is_settled(layout: Layout, timeline: Timeline, span: tuple[int, int]) -> bool:

@@ -75,7 +75,7 @@ class Judged:
     tolerance_pa: float
 
 
-def own_inputs(model: Model, gauge: int) -> tuple[list[int], Array]:
+def own_inputs(model: Model, gauge: int) -> tuple[NDArray[np.int64], Array]:
     """Inputs that make up a gauge's own error, and the factor by which each is widened.
 
     Parameters
@@ -85,7 +85,7 @@ def own_inputs(model: Model, gauge: int) -> tuple[list[int], Array]:
 
     Returns
     -------
-    columns : list of int
+    columns : ndarray of int
     widening : ndarray, shape (columns,)
         [-]
     """
@@ -99,7 +99,7 @@ def own_inputs(model: Model, gauge: int) -> tuple[list[int], Array]:
 
     factors = [widening(item) for item in model.inputs]
     columns = [column for column, factor in enumerate(factors) if factor > 0.0]
-    return columns, np.array([factors[column] for column in columns])
+    return np.array(columns, dtype=np.int64), np.array([factors[column] for column in columns])
 
 
 def own_error(model: Model, explanation: Explanation, gauge: int) -> OwnError | None:
@@ -122,7 +122,7 @@ def own_error(model: Model, explanation: Explanation, gauge: int) -> OwnError | 
     columns, widening = own_inputs(model, gauge)
     curve = frame.linear.calibration[np.ix_(rows, columns)]
     widened = _Widened(frame, columns, widening)
-    sizes, weights, mean_pa, covariance = _error_by_size(frame, explanation.chosen, gauge, rows, curve, widened)
+    weights, mean_pa, covariance = _error_by_size(frame, explanation.chosen, gauge, rows, curve, widened)
     noun = model.layout.job.gauges[gauge]
     perfect = np.array([frame.linear.states[s].reading_pa[gauge] for s in spells])
     tolerance = np.array([noun.tolerance_at(float(p)) for p in perfect])
@@ -155,7 +155,7 @@ class _Widened:
     With ``V = 1`` in white space and columns ``C`` of the added doubt, ``(1 + C Cᵀ)⁻¹ = 1 − C (1 + CᵀC)⁻¹ Cᵀ``.
     """
 
-    def __init__(self, frame: Frame, columns: Sequence[int], widening: Array) -> None:
+    def __init__(self, frame: Frame, columns: NDArray[np.int64], widening: Array) -> None:
         shared = frame.linear.white.shared[:, columns]
         added = shared * np.sqrt(np.maximum(widening**2 - 1.0, 0.0))
         self._added = added
@@ -170,8 +170,8 @@ class _Widened:
 
 def _error_by_size(
     frame: Frame, chosen: Sequence[int], gauge: int, rows: NDArray[np.int64], curve: Array, widened: _Widened
-) -> tuple[Array, Array, Array, Array]:
-    """Sizes of the set's first free cause, their weights, the error's mean at each, and its covariance.
+) -> tuple[Array, Array, Array]:
+    """Weights of the sizes of the set's first free cause, the error's mean at each, and its covariance.
 
     The first free cause is the gauge's own where it has one; further ones are taken as normal about their best size.
     """
@@ -191,7 +191,7 @@ def _error_by_size(
     covariance = curve @ own @ curve.T
     base = base + gain[:, 0]
     if not free:
-        return np.zeros(1), np.ones(1), base[None, :], covariance
+        return np.ones(1), base[None, :], covariance
     # what a unit of each size does to the estimate of the error
     slope = (effect.T - gain[:, 1:]).T
     gram = widened.product(white, white)
@@ -207,7 +207,7 @@ def _error_by_size(
         centre = (product[1:][None, :] - posterior.sizes[:, None] * gram[1:, 0][None, :]) @ spread
         mean = mean + centre @ slope[1:]
         covariance = covariance + slope[1:].T @ spread @ slope[1:]
-    return posterior.sizes, posterior.weights, mean, covariance
+    return posterior.weights, mean, covariance
 
 
 def judge_gauge(model: Model, posterior: Posterior, gauge: int) -> Judged:

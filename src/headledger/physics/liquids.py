@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 from importlib.resources import files
@@ -54,8 +55,9 @@ def _scaled(value: float, limits: list[float]) -> float:
     return 2.0 * (value - limits[0]) / (limits[1] - limits[0]) - 1.0
 
 
-def _demand(name: str, value: float, low: float, high: float, unit: str, shift: float = 0.0) -> None:
+def _demand(name: str, value: float, limits: Sequence[float], unit: str, shift: float = 0.0) -> None:
     """Refuse a value that a table does not hold."""
+    low, high = limits
     if not low - 1e-6 <= value <= high + 1e-6:
         raise QuantityError(
             f"{name} is outside the table of this liquid",
@@ -89,7 +91,7 @@ def water_properties(temperature_k: float) -> LiquidProperties:
     low, high = table["range_k"]
     # 0 °C lies 0.01 K below the table, where nothing changes
     temperature_k = low if low - 0.011 <= temperature_k < low else temperature_k
-    _demand("temperature", temperature_k, low, high, "°C", 273.15)
+    _demand("temperature", temperature_k, (low, high), "°C", 273.15)
     at = _scaled(temperature_k, table["range_k"])
 
     def value(name: str) -> float:
@@ -129,8 +131,8 @@ def seawater_properties(temperature_k: float, salinity_g_kg: float) -> LiquidPro
     less 0.537 parts per thousand for each g/kg (Raoult's law for sea salt).
     """
     table = _tables()["seawater"]
-    _demand("temperature", temperature_k, *table["range_k"], "°C", 273.15)
-    _demand("salinity", salinity_g_kg, *table["salinity_g_kg"], "g/kg")
+    _demand("temperature", temperature_k, table["range_k"], "°C", 273.15)
+    _demand("salinity", salinity_g_kg, table["salinity_g_kg"], "g/kg")
     x, y = _scaled(salinity_g_kg, table["salinity_g_kg"]), _scaled(temperature_k, table["range_k"])
     water = water_properties(temperature_k)
     return LiquidProperties(
@@ -173,13 +175,13 @@ def glycol_properties(
     has them.
     """
     table = _tables()[(BY_VOLUME if by_volume else BY_MASS)[kind]]
-    _demand("concentration", 100.0 * concentration_fraction, *(100.0 * f for f in table["fractions"]), "%")
+    least, most = table["fractions"]
+    _demand("concentration", 100.0 * concentration_fraction, (100.0 * least, 100.0 * most), "%")
     freezing = float(
-        np.interp(
-            concentration_fraction, np.linspace(*table["fractions"], len(table["freezing_k"])), table["freezing_k"]
-        )
+        np.interp(concentration_fraction, np.linspace(least, most, len(table["freezing_k"])), table["freezing_k"])
     )
-    _demand("temperature", temperature_k, max(freezing, table["range_k"][0]), table["range_k"][1], "°C", 273.15)
+    coldest, hottest = table["range_k"]
+    _demand("temperature", temperature_k, (max(freezing, coldest), hottest), "°C", 273.15)
     x, y = _scaled(concentration_fraction, table["fractions"]), _scaled(temperature_k, table["range_k"])
     water = water_properties(max(temperature_k, 273.16))
     mass = concentration_fraction

@@ -6,7 +6,7 @@ import re
 
 from headledger.errors import QuantityError
 from headledger.plant.gauges import ErrorLimit
-from headledger.quantities import Dimension, PressureKind, parse_number, parse_quantity
+from headledger.quantities import PressureKind, parse_number, parse_pressure
 
 EXAMPLES = "class 1.6, grade 2A, 0.25 % span, 0.5 % reading, ±0.02 bar, or a sum of these joined by +"
 
@@ -43,17 +43,17 @@ def parse_limit(text: str, span_pa: float) -> ErrorLimit:
         Not such a statement, or not positive.
     """
     middle = outer = reading = 0.0
-    for part in re.split(r"\s+\+\s*|\s*\+\s+", text.strip()):
+    for part in re.split(r"(?<![eE])\+(?!/?-)", text.strip()):
         one = _parse_part(part.strip(), span_pa)
+        if not (one[0] > 0.0 or one[2] > 0.0):
+            raise QuantityError("must be positive", repr(text.strip()), EXAMPLES)
         middle, outer, reading = middle + one[0], outer + one[1], reading + one[2]
-    if not (middle > 0.0 or reading > 0.0):
-        raise QuantityError("must be positive", repr(text), EXAMPLES)
     return ErrorLimit(limit_pa=middle, outer_limit_pa=outer, reading_fraction=reading, text=text.strip())
 
 
 def _parse_part(part: str, span_pa: float) -> tuple[float, float, float]:
     """Middle limit, outer limit and reading fraction of one part. [Pa], [Pa], [-]"""
-    plain = part.removeprefix("±").removeprefix("+/-").strip()
+    plain = re.sub(r"^(?:±|\+/-|\+-)\s*", "", part)
     class_of = re.fullmatch(r"(?:class|cl\.?)\s*([\d.,]+)", plain, re.IGNORECASE)
     if class_of:
         limit = parse_number(class_of[1].replace(",", ".")) / 100.0 * span_pa
@@ -65,15 +65,17 @@ def _parse_part(part: str, span_pa: float) -> tuple[float, float, float]:
         outer, middle = ASME_GRADES[grade[1].upper()]
         return middle / 100.0 * span_pa, outer / 100.0 * span_pa, 0.0
     share = re.fullmatch(
-        r"([\d.,eE+-]+)\s*%\s*(?:of\s+)?(span|fs|full scale|urv|reading|rdg|value)", plain, re.IGNORECASE
+        r"([\d.,eE+-]+)\s*%\s*(?:of\s+)?(span|fs|full scale|reading|rdg)", plain, re.IGNORECASE
     )
     if share:
         value = parse_number(share[1].replace(",", ".")) / 100.0
-        if share[2].casefold() in ("reading", "rdg", "value"):
+        if share[2].casefold() in ("reading", "rdg"):
             return 0.0, 0.0, value
         return value * span_pa, value * span_pa, 0.0
     try:
-        limit = parse_quantity(plain, Dimension.PRESSURE, default_kind=PressureKind.DIFFERENCE)
+        limit = parse_pressure(plain, PressureKind.DIFFERENCE)
     except QuantityError as error:
-        raise QuantityError("not a statement of accuracy", repr(part), EXAMPLES) from error
+        kind = error.fault.startswith("of the wrong kind")
+        fault, expected = (error.fault, error.expected) if kind else ("not a statement of accuracy", EXAMPLES)
+        raise QuantityError(fault, repr(part), expected) from None
     return limit, limit, 0.0

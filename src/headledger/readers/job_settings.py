@@ -10,7 +10,17 @@ from typing import Any
 
 from headledger.errors import JobError, Problem, QuantityError
 from headledger.plant.job import CheckSettings, DecisionRule, LiquidKind, LiquidSpec, LogSettings, Site
-from headledger.quantities import Dimension, PressureKind, Unit, nearest, parse_quantity, parse_unit, split_quantity
+from headledger.quantities import (
+    Dimension,
+    PressureKind,
+    Unit,
+    nearest,
+    parse_pressure,
+    parse_quantity,
+    parse_unit,
+    split_quantity,
+)
+from headledger.readers.accuracy import parse_limit
 from headledger.readers.tables import Problems, decode
 
 FILE = "job.toml"
@@ -91,25 +101,45 @@ class Section:
             self.fault(key, "must be a text with its unit", repr(value), f'{key} = "{example}"')
             return None
         try:
-            return parse_quantity(value, dimension, default_kind=kind)
+            return parse_quantity(value, dimension) if kind is None else parse_pressure(value, kind)
         except QuantityError as error:
-            self.fault(key, error.fault, error.found, f'{key} = "{example}"')
+            self.fault(key, error.fault, error.found, error.expected or f'{key} = "{example}"')
             return None
+
+    def positive(self, key: str, dimension: Dimension, example: str, kind: PressureKind | None = None) -> float | None:
+        """A quantity above zero in SI, None where it is not given or faulty."""
+        value = self.quantity(key, dimension, example, kind)
+        if value is not None and value <= 0.0:
+            self.fault(key, "must be positive", repr(self.values[key]), f'{key} = "{example}"')
+            return None
+        return value
+
+    def share(self, key: str, example: str) -> float | None:
+        """A ± in per cent as a fraction, None where it is not given or faulty."""
+        value = self.quantity(key, Dimension.RATIO, example)
+        if value is not None and not (0.0 < abs(value) <= 1.0 and "%" in self.values[key]):
+            self.fault(key, "must be a share in per cent", repr(self.values[key]), f'{key} = "{example}"')
+            return None
+        return value
 
     def column(self, key: str, dimension: Dimension) -> tuple[str, Unit] | None:
         """A log column that measures this, where the key is a table ``{ column, unit }``."""
         value = self.values.get(key)
         if not isinstance(value, dict):
             return None
-        name, unit = value.get("column"), value.get("unit")
-        if not (isinstance(name, str) and isinstance(unit, str)) or set(value) - {"column", "unit"}:
+        name, unit_text = value.get("column"), value.get("unit")
+        if not (isinstance(name, str) and isinstance(unit_text, str)) or set(value) - {"column", "unit"}:
             self.fault(key, "must name a column and its unit", str(value), f'{key} = {{ column = "…", unit = "…" }}')
             return None
         try:
-            return name, parse_unit(unit, dimension, default_kind=PressureKind.ABSOLUTE)
+            unit = parse_unit(unit_text, dimension, default_kind=PressureKind.ABSOLUTE)
         except QuantityError as error:
             self.fault(key, error.fault, error.found, error.expected)
             return None
+        if unit.kind not in (None, PressureKind.ABSOLUTE):
+            self.fault(key, "must be an absolute pressure", unit_text, f"{unit.as_difference().text}a")
+            return None
+        return name, unit
 
 
 def read_settings(folder: Path, problems: Problems) -> dict[str, Section]:
@@ -129,18 +159,7 @@ def read_settings(folder: Path, problems: Problems) -> dict[str, Section]:
     JobError
         There is no such folder or file, or it is no TOML.
     """
-    if not folder.is_dir():
-        raise JobError([Problem(str(folder.name), "there is no such folder", "", "a job folder that holds job.toml")])
-    path = folder / FILE
-    if not path.is_file():
-        expected = "a job folder that holds job.toml with its tables of stations, runs and gauges"
-        raise JobError([Problem(str(folder.name), "holds no job.toml", "", expected)])
-    try:
-        tree = tomllib.loads(decode(path.read_bytes(), FILE))
-    except tomllib.TOMLDecodeError as error:
-        raise JobError([Problem(FILE, "is not valid TOML", str(error), 'lines such as title = "…"')]) from None
-    except RecursionError:
-        raise JobError([Problem(FILE, "is nested too deeply", "", "one level of tables")]) from None
+    tree = _tree(folder)
     sections = {}
     for key in tree:
         if key not in KEYS[""]:
@@ -159,6 +178,34 @@ def read_settings(folder: Path, problems: Problems) -> dict[str, Section]:
     return sections
 
 
+def _tree(folder: Path) -> dict[str, Any]:
+    """What job.toml holds, as TOML has it.
+
+    Raises
+    ------
+    JobError
+        There is no such folder or file, or it is no TOML.
+    """
+    path = folder / FILE
+    expected = "a job folder that holds job.toml with its tables of stations, runs and gauges"
+    if not folder.is_dir():
+        fault = "is a file and no job folder" if folder.is_file() else "there is no such folder"
+        raise JobError([Problem(str(folder), fault, "", expected)])
+    if not path.is_file():
+        raise JobError([Problem(str(folder), "holds no job.toml", "", expected)])
+    try:
+        return tomllib.loads(decode(path.read_bytes(), FILE))
+    except OSError as error:
+        raise JobError([Problem(FILE, "cannot be read", error.strerror or str(error), "a readable file")]) from None
+    except tomllib.TOMLDecodeError as error:
+        line = re.search(r"at line (\d+)", str(error))
+        place = f"{FILE}, line {line[1]}" if line else FILE
+        fault = f"is not valid TOML ({str(error).partition(' (at ')[0]})"
+        raise JobError([Problem(place, fault, "", 'lines such as title = "…"')]) from None
+    except RecursionError:
+        raise JobError([Problem(FILE, "is nested too deeply", "", "one level of tables")]) from None
+
+
 def _did_you_mean(key: str, known: tuple[str, ...]) -> str:
     """The nearest known key, or all of them."""
     close = nearest(key, known)
@@ -173,51 +220,65 @@ def read_liquid(section: Section) -> LiquidSpec:
         section.fault("kind", "unknown liquid", kind, _did_you_mean(kind, tuple(kinds)))
         kind = "water"
     column = section.column("temperature", Dimension.TEMPERATURE)
-    stated = None if column else section.quantity("temperature", Dimension.TEMPERATURE, "18 degC")
+    stated = None if column else section.positive("temperature", Dimension.TEMPERATURE, "18 degC")
     doubt = section.quantity("temperature_uncertainty", Dimension.TEMPERATURE_DIFFERENCE, "±1 K")
     if doubt is None:
         doubt = KELVIN_UNSTATED if stated is None and column is None else 1.0
-    density_doubt = section.quantity("density_uncertainty", Dimension.RATIO, "±0.1 %")
+    density_doubt = section.share("density_uncertainty", "±0.1 %")
     concentration, by_volume = _concentration(section, kind)
-    density = section.quantity("density", Dimension.DENSITY, "870 kg/m3")
-    if kind == "other" and density is None:
-        section.fault("density", "is missing for a liquid of kind other", "", 'density = "870 kg/m3"')
+    _check_belonging(section, kind)
     return LiquidSpec(
         kind=LiquidKind(kind),
         concentration_fraction=concentration,
         concentration_by_volume=by_volume,
-        salinity_g_kg=section.quantity("salinity", Dimension.SALINITY, "35 g/kg"),
+        salinity_g_kg=section.positive("salinity", Dimension.SALINITY, "35 g/kg"),
         temperature_k=293.15 if stated is None else stated,
         temperature_column=column[0] if column else None,
         temperature_unit=column[1] if column else None,
         temperature_sd_k=abs(doubt) / COVERAGE,
-        density_kg_m3=density,
-        viscosity_pa_s=section.quantity("viscosity", Dimension.VISCOSITY, "12 mPa*s"),
-        vapour_pressure_pa=section.quantity("vapour_pressure", Dimension.PRESSURE, "0.5 kPa", PressureKind.ABSOLUTE),
+        density_kg_m3=section.positive("density", Dimension.DENSITY, "870 kg/m3"),
+        viscosity_pa_s=section.positive("viscosity", Dimension.VISCOSITY, "12 mPa*s"),
+        vapour_pressure_pa=section.positive("vapour_pressure", Dimension.PRESSURE, "0.5 kPa", PressureKind.ABSOLUTE),
         density_sd_fraction=abs(DENSITY_UNSTATED if density_doubt is None else density_doubt) / COVERAGE,
     )
+
+
+def _check_belonging(section: Section, kind: str) -> None:
+    """Note what a liquid of this kind cannot do without, and what belongs to another kind."""
+    for key, kinds, example in (
+        ("concentration", ("ethylene-glycol", "propylene-glycol"), "30 %"),
+        ("salinity", ("seawater",), ""),
+        ("density", ("other",), "870 kg/m3"),
+        ("viscosity", ("other",), ""),
+        ("vapour_pressure", ("other",), ""),
+    ):
+        given = key in section.values
+        if given and kind not in kinds:
+            section.fault(key, f"does not belong to {kind}", repr(section.values[key]), "kind = " + " or ".join(kinds))
+        if not given and kind in kinds and example:
+            section.fault(key, f"is missing for {kind}", "", f'{key} = "{example}"')
 
 
 def _concentration(section: Section, kind: str) -> tuple[float | None, bool]:
     """Concentration of a glycol and whether it is by volume."""
     text = section.text("concentration")
-    if not text:
-        if "glycol" in kind:
-            section.fault("concentration", "is missing for a glycol", "", 'concentration = "30 %"')
+    if not text or "glycol" not in kind:
         return None, False
-    by_volume = bool(re.search(r"vol", text, re.IGNORECASE))
     try:
-        number, _ = split_quantity(text)
-    except QuantityError as error:
-        section.fault("concentration", error.fault, error.found, 'concentration = "30 %" or "30 % vol"')
+        number, unit = split_quantity(text)
+    except QuantityError:
+        number, unit = -1.0, ""
+    words = unit.casefold().replace("%", "% ").split()
+    if not (0.0 < number < 100.0 and words in (["%"], ["%", "vol"], ["%", "mass"])):
+        section.fault("concentration", "not a concentration", repr(text), '"30 %" by mass or "30 % vol" by volume')
         return None, False
-    return number / 100.0, by_volume
+    return number / 100.0, words[-1] == "vol"
 
 
 def read_site(section: Section) -> Site:
     """Where a job stands."""
     column = section.column("barometer", Dimension.PRESSURE)
-    barometer = None if column else section.quantity("barometer", Dimension.PRESSURE, "98.9 kPa", PressureKind.ABSOLUTE)
+    barometer = None if column else section.positive("barometer", Dimension.PRESSURE, "98.9 kPa", PressureKind.ABSOLUTE)
     doubt = section.quantity("barometer_uncertainty", Dimension.PRESSURE, "±0.2 kPa", PressureKind.DIFFERENCE)
     if doubt is None:
         doubt = BAROMETER_UNSTATED_PA if barometer is None and column is None else BAROMETER_STATED_PA
@@ -233,7 +294,7 @@ def read_site(section: Section) -> Site:
         barometer_column=column[0] if column else None,
         barometer_unit=column[1] if column else None,
         barometer_sd_pa=abs(doubt) / COVERAGE,
-        ambient_k=section.quantity("ambient", Dimension.TEMPERATURE, "31 degC"),
+        ambient_k=section.positive("ambient", Dimension.TEMPERATURE, "31 degC"),
         ambient_sd_k=abs(AMBIENT_UNSTATED_K if ambient_doubt is None else ambient_doubt) / COVERAGE,
     )
 
@@ -245,16 +306,15 @@ def read_check(section: Section) -> tuple[CheckSettings, Defaults]:
         section.fault("decision", "unknown rule", rule, "guarded or simple")
         rule = "guarded"
     confidence = section.values.get("confidence", 0.95)
-    if not isinstance(confidence, int | float) or not 0.5 <= float(confidence) < 1.0:
+    if isinstance(confidence, bool) or not isinstance(confidence, int | float) or not 0.5 <= float(confidence) < 1.0:
         section.fault("confidence", "must be a share", repr(confidence), "a number from 0.5 to below 1, such as 0.95")
         confidence = 0.95
     elevation = section.quantity("elevation_uncertainty", Dimension.LENGTH, "±50 mm")
-    loss = section.quantity("loss_uncertainty", Dimension.RATIO, "±15 %")
-    flow = section.quantity("flow_uncertainty", Dimension.RATIO, "±2 %")
+    loss, flow = section.share("loss_uncertainty", "±15 %"), section.share("flow_uncertainty", "±2 %")
     settings = CheckSettings(
         decision=DecisionRule(rule),
         confidence_fraction=float(confidence),
-        tolerance_text=section.text("tolerance"),
+        tolerance_text=_tolerance(section),
     )
     return settings, Defaults(
         elevation_sd_m=abs(ELEVATION_UNSTATED_M if elevation is None else elevation) / COVERAGE,
@@ -262,6 +322,18 @@ def read_check(section: Section) -> tuple[CheckSettings, Defaults]:
         flow_sd_fraction=abs(FLOW_UNSTATED if flow is None else flow) / COVERAGE,
         loss_stated=loss is not None,
     )
+
+
+def _tolerance(section: Section) -> str:
+    """The default tolerance as stated, empty where there is none or a faulty one."""
+    text = section.text("tolerance")
+    try:
+        if text:
+            parse_limit(text, 1.0)
+    except QuantityError as error:
+        section.fault("tolerance", error.fault, error.found, error.expected)
+        return ""
+    return text
 
 
 def read_log_settings(section: Section) -> LogSettings:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from datetime import datetime
+from itertools import pairwise
 from pathlib import Path
 from zoneinfo import ZoneInfo
 
@@ -68,7 +69,7 @@ def read_spells(
             )
         )
     ordered = sorted(spells, key=lambda spell: spell.start_s)
-    for first, second in zip(ordered, ordered[1:], strict=False):
+    for first, second in pairwise(ordered):
         if second.start_s < first.end_s:
             problems.add(file, "two spells overlap", "", "spells one after another")
     return spells

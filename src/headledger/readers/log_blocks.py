@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import csv
 import io
-import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -20,8 +19,6 @@ Ints = NDArray[np.int64]
 
 MOST_CELL_BYTES = 64
 """Of a stamp, a tag or a quality; the rest of a longer cell is not looked at. [B]"""
-_NUMBER = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?")
-_NOT_FINITE = re.compile(r"[+-]?inf(?:inity)?", re.IGNORECASE)
 
 
 @dataclass(frozen=True, slots=True)
@@ -204,37 +201,27 @@ def parse_values(rows: Rows, shape: LogShape) -> tuple[Array, list[tuple[int, in
         if column.dtype.kind in "iuf":
             values[place] = column.to_numpy(dtype=np.float64)
         else:
-            cells = [None if cell is None or cell != cell else str(cell) for cell in column.tolist()]
-            values[place] = _numbers(cells, shape)
+            cells = [cell if isinstance(cell, str) else str(cell) for cell in column.fillna("").tolist()]
+            spelt = pd.Series([_english(cell, shape) for cell in cells], dtype=object)
+            values[place] = pd.to_numeric(spelt, errors="coerce").to_numpy(dtype=np.float64)
             wrong = np.flatnonzero(np.isnan(values[place]))
-            faults += [(int(row), place, "not a number") for row in wrong if _says_something(cells[row])]
+            faults += [(int(row), place, "not a number") for row in wrong if not _is_blank(cells[row])]
         endless = np.flatnonzero(np.isinf(values[place]))
         faults += [(int(row), place, "not finite") for row in endless]
         values[place, endless] = np.nan
     return values, faults
 
 
-def _says_something(cell: str | None) -> bool:
-    """Whether a cell is not blank."""
-    return cell is not None and cell.strip().lower() not in EMPTY_WORDS
+def _is_blank(cell: str) -> bool:
+    """Whether a cell says that there is no value."""
+    return cell.strip().lower() in EMPTY_WORDS
 
 
-def _numbers(cells: Sequence[str | None], shape: LogShape) -> Array:
-    """Numbers of cells one by one, nan where there is none."""
-    numbers = np.full(len(cells), np.nan)
-    for row, cell in enumerate(cells):
-        if cell is None:
-            continue
-        plain = cell.strip()
-        if shape.thousands:
-            plain = plain.replace(shape.thousands, "")
-        if shape.decimal != ".":
-            plain = plain.replace(".", "x").replace(shape.decimal, ".")
-        if _NUMBER.fullmatch(plain):
-            numbers[row] = float(plain)
-        elif _NOT_FINITE.fullmatch(plain):
-            numbers[row] = np.inf
-    return numbers
+def _english(cell: str, shape: LogShape) -> str:
+    """A number with a decimal point and without groups; one with the other decimal mark is made no number."""
+    if shape.thousands:
+        cell = cell.replace(shape.thousands, "")
+    return cell if shape.decimal == "." else cell.replace(".", "x").replace(shape.decimal, ".")
 
 
 def cells_of_column(column: int, index: Ints, values: Array) -> Cells:

@@ -152,4 +152,4 @@ def own_estimate(group: Group, shared_mean: Array) -> Array:
     weight = 1.0 / group.noise_sd
     rows = np.vstack([group.own * weight[:, None], np.diag(1.0 / group.own_sd)])
     target = np.concatenate([(group.residual - group.shared @ shared_mean) * weight, group.own_offset / group.own_sd])
-    return np.linalg.lstsq(rows, target, rcond=None)[0]
+    return np.asarray(np.linalg.lstsq(rows, target, rcond=None)[0])

@@ -93,7 +93,7 @@ def log_sum(values: Array, axis: int = -1) -> Array:
     top = np.max(values, axis=axis, keepdims=True)
     top = np.where(np.isfinite(top), top, 0.0)
     with np.errstate(divide="ignore"):
-        return np.log(np.exp(values - top).sum(axis=axis)) + np.squeeze(top, axis=axis)
+        return np.asarray(np.log(np.exp(values - top).sum(axis=axis)) + np.squeeze(top, axis=axis))
 
 
 def _nodes(prior: SizePriors, low: Array, high: Array, count: int) -> tuple[Array, Array]:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import numpy as np
+
 from headledger.diagnosis.causes.base import Mark, View
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.result import CauseKind, Place
@@ -31,7 +33,7 @@ def marks(view: View) -> list[Mark]:
         weights = [column_pa_m(view.layout, index, view.linear.states[s].head_weight_pa_m) for s in spells]
         if not weights or not any(weights):
             continue
-        vector = view.gauge_vector(index, weights)
+        vector = view.gauge_vector(index, np.array(weights))
         least = view.least_size(vector)
         if least < LARGEST_M:
             found.append(
