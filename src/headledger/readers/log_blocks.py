@@ -201,11 +201,12 @@ def parse_values(rows: Rows, shape: LogShape) -> tuple[Array, list[tuple[int, in
         if column.dtype.kind in "iuf":
             values[place] = column.to_numpy(dtype=np.float64)
         else:
-            cells = [cell if isinstance(cell, str) else str(cell) for cell in column.fillna("").tolist()]
-            spelt = pd.Series([_english(cell, shape) for cell in cells], dtype=object)
-            values[place] = pd.to_numeric(spelt, errors="coerce").to_numpy(dtype=np.float64)
-            wrong = np.flatnonzero(np.isnan(values[place]))
-            faults += [(int(row), place, "not a number") for row in wrong if not _is_blank(cells[row])]
+            texts = column.astype(str) if column.dtype.kind == "b" else column
+            if shape.decimal != "." or shape.thousands:
+                texts = texts.map(lambda cell: _english(str(cell), shape), na_action="ignore")
+            values[place] = pd.to_numeric(texts, errors="coerce").to_numpy(dtype=np.float64)
+            wrong = np.flatnonzero(np.isnan(values[place]) & column.notna().to_numpy())
+            faults += [(int(row), place, "not a number") for row in wrong if not _is_blank(str(column[row]))]
         endless = np.flatnonzero(np.isinf(values[place]))
         faults += [(int(row), place, "not finite") for row in endless]
         values[place, endless] = np.nan
