@@ -2,23 +2,38 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass
-from datetime import UTC, datetime
-from pathlib import Path
+from datetime import datetime
+from zoneinfo import ZoneInfo
 
 from headledger.errors import QuantityError
 from headledger.plant.gauges import ErrorLimit, Gauge, Leg, LegFill, Signal
 from headledger.plant.runs import Run
-from headledger.quantities import Dimension, PressureKind, Unit, nearest, parse_quantity, parse_unit, split_quantity
+from headledger.quantities import (
+    Dimension,
+    PressureKind,
+    Unit,
+    nearest,
+    parse_pressure,
+    parse_quantity,
+    parse_unit,
+    split_quantity,
+)
 from headledger.readers.accuracy import parse_limit
 from headledger.readers.job_settings import COVERAGE, Defaults
-from headledger.readers.tables import Column, Problems, Row, read_table
+from headledger.readers.job_site import moment
+from headledger.readers.tables import Column, Row, Table
 
 EN_CLASS_EFFECT_PER_K = 0.0004
 """Temperature effect of a gauge with an EN class, of its span (EN 837-1, from memory). [1/K]"""
 
 STANDARD_ATMOSPHERE_PA = 101_325.0
+"""What is sealed in behind a gauge where its pressure is not stated. [Pa absolute]"""
+
+HEAVIEST_FILL_KG_M3 = 14_000.0
+"""Mercury is the heaviest filling of a leg. [kg/m³]"""
 
 GAUGE_COLUMNS = {
     "tag": Column(required=True),
@@ -65,69 +80,80 @@ class _Range:
         return self.high_pa - self.low_pa
 
 
-def read_gauges(
-    path: Path,
-    file: str,
-    sheet: str | None,
-    runs: Sequence[Run],
-    tolerance_text: str,
-    defaults: Defaults,
-    problems: Problems,
-) -> tuple[list[Gauge], list[str]]:
+@dataclass(frozen=True, slots=True)
+class GaugeContext:
+    """What a row of gauges needs to be understood."""
+
+    runs: Sequence[Run]
+    zone: ZoneInfo
+    tolerance_text: str
+    defaults: Defaults
+
+
+def read_gauges(table: Table, context: GaugeContext) -> tuple[list[Gauge], list[str]]:
     """Gauges, and warnings about their tolerances, a sentence each."""
-    table = read_table(path, file, GAUGE_COLUMNS, problems, sheet=sheet)
     gauges, remarks = [], []
     for row in table.rows:
-        gauge = _gauge(row, runs, tolerance_text, defaults)
+        gauge = _gauge(row, context)
         if gauge is None:
             continue
         gauges.append(gauge)
-        middle = (gauge.range_low_pa + gauge.range_high_pa) / 2.0
-        allowed = gauge.accuracy.at(middle, gauge.range_low_pa, gauge.range_high_pa)
-        if gauge.tolerance_at(middle) < 0.999 * allowed:
+        if _is_tight(gauge):
             remarks.append(
-                f"{gauge.tag}: its tolerance ({gauge.tolerance.text}) is tighter than its accuracy ({gauge.accuracy.text})."
+                f"{gauge.tag}: its tolerance ({gauge.tolerance.text}) is tighter than its accuracy "
+                f"({gauge.accuracy.text})."
             )
     return gauges, remarks
 
 
-def _gauge(row: Row, runs: Sequence[Run], tolerance_text: str, defaults: Defaults) -> Gauge | None:
+def _is_tight(gauge: Gauge) -> bool:
+    """Whether the tolerance lies inside the accuracy anywhere on the range."""
+    low, high = gauge.range_low_pa, gauge.range_high_pa
+    readings = (low, low + 0.25 * gauge.span_pa, (low + high) / 2.0, high)
+    return any(gauge.tolerance_at(pa) < (1.0 - 1e-9) * gauge.accuracy.at(pa, low, high) for pa in readings)
+
+
+def _gauge(row: Row, context: GaugeContext) -> Gauge | None:
     """One row of the gauges; None where its unit or range cannot be used."""
     tag, station, low_station = row.needed("tag"), row.needed("station"), row.text("low station") or None
     scale = _range(row, differential=low_station is not None)
+    hung_from, hung_until = _hung(row, context.zone)
+    leg, signal, effect = _leg(row), _signal(row), _temperature_effect(row)
+    elevation, doubt = row.quantity("elevation"), row.positive("elevation uncertainty", zero=True)
+    corrected_to_tap, corrected_to_m = _corrected(row)
+    accuracy_text = row.needed("accuracy")
     if scale is None:
         return None
-    accuracy = _limit(row, "accuracy", row.needed("accuracy"), scale)
-    tolerance = _limit(row, "tolerance", row.text("tolerance") or tolerance_text, scale)
-    corrected_to_tap, corrected_to_m = _corrected(row)
-    doubt = row.positive("elevation uncertainty", zero=True)
-    calibration = _pressure(row, "calibration uncertainty", scale)
+    accuracy = _limit(row, "accuracy", accuracy_text, scale)
+    tolerance = _limit(row, "tolerance", row.text("tolerance") or context.tolerance_text, scale)
+    calibration = _pressure(row, "calibration uncertainty", scale, zero=False)
+    whole = ErrorLimit(limit_pa=scale.span_pa, outer_limit_pa=scale.span_pa)
     return Gauge(
         tag=tag,
         station=station,
-        run=row.text("run") or run_of_tap(station, runs),
+        run=row.text("run") or run_of_tap(station, context.runs),
         unit=scale.unit,
         range_low_pa=scale.low_pa,
         range_high_pa=scale.high_pa,
-        accuracy=accuracy or ErrorLimit(limit_pa=scale.span_pa, outer_limit_pa=scale.span_pa),
-        tolerance=tolerance or accuracy or ErrorLimit(limit_pa=scale.span_pa, outer_limit_pa=scale.span_pa),
+        accuracy=accuracy or whole,
+        tolerance=tolerance or accuracy or whole,
         column=row.text("column") or tag,
         low_station=low_station,
-        elevation_m=row.quantity("elevation"),
-        elevation_sd_m=defaults.elevation_sd_m if doubt is None else doubt / COVERAGE,
-        leg=_leg(row),
+        elevation_m=elevation,
+        elevation_sd_m=context.defaults.elevation_sd_m if doubt is None else doubt / COVERAGE,
+        leg=leg,
         corrected_to_m=corrected_to_m,
         corrected_to_tap=corrected_to_tap,
         sealed_pa=_sealed(row, scale.unit),
-        signal=_signal(row),
-        temperature_effect_per_k=_temperature_effect(row),
+        signal=signal,
+        temperature_effect_per_k=effect,
         correction_pa=_pressure(row, "correction", scale) or 0.0,
-        calibration_sd_pa=None if calibration is None else abs(calibration) / COVERAGE,
-        division_pa=abs(_pressure(row, "division", scale) or 0.0),
+        calibration_sd_pa=None if calibration is None else calibration / COVERAGE,
+        division_pa=_pressure(row, "division", scale, zero=True) or 0.0,
         damping_s=row.positive("damping", zero=True) or 0.0,
         serial=row.text("serial"),
-        hung_from=_moment(row, "from"),
-        hung_until=_moment(row, "until"),
+        hung_from=hung_from,
+        hung_until=hung_until,
         certificate=row.text("certificate"),
         calibrated=row.text("calibrated"),
         due=row.text("due"),
@@ -156,10 +182,12 @@ def _range(row: Row, *, differential: bool) -> _Range | None:
     if differential and unit.kind is not PressureKind.DIFFERENCE:
         row.fault("unit", "a differential gauge's unit carries no suffix", text, unit.as_difference().text)
         return None
+    if not differential and unit.kind is PressureKind.DIFFERENCE:
+        plain = unit.as_difference().text
+        row.fault("unit", "only a differential gauge reads a difference", text, f"{plain}g, {plain}a or a low station")
+        return None
+    row.needed("range low"), row.needed("range high")
     low, high = row.number_of("range low"), row.number_of("range high")
-    for column, value in (("range low", low), ("range high", high)):
-        if value is None and not row.text(column):
-            row.fault(column, "is blank", "", "the end of the range, in the gauge's unit")
     if low is None or high is None:
         return None
     if high <= low:
@@ -184,19 +212,24 @@ def _limit(row: Row, column: str, text: str, scale: _Range) -> ErrorLimit | None
         return None
 
 
-def _pressure(row: Row, column: str, scale: _Range) -> float | None:
-    """A pressure difference in the gauge's unit, or with a unit of its own. [Pa]"""
+def _pressure(row: Row, column: str, scale: _Range, *, zero: bool | None = None) -> float | None:
+    """A pressure difference in the gauge's unit, or with a unit of its own. [Pa]
+
+    Any sign unless `zero` is given, which says whether zero is allowed beside what is positive.
+    """
     text = row.text(column)
     if not text:
         return None
     try:
-        number, unit = split_quantity(text.replace(",", ".") if row.table.decimal_comma else text)
-        if not unit:
-            return number * scale.unit.factor
-        return parse_quantity(text, Dimension.PRESSURE, default_kind=PressureKind.DIFFERENCE)
+        number, unit = split_quantity(text)
+        factor = parse_unit(unit, Dimension.PRESSURE).factor if unit else scale.unit.factor
     except QuantityError as error:
         row.fault(column, error.fault, error.found, error.expected)
         return None
+    if zero is not None and (number < 0.0 or (number == 0.0 and not zero)):
+        row.fault(column, "must not be negative" if zero else "must be positive", text)
+        return None
+    return number * factor
 
 
 def _leg(row: Row) -> Leg:
@@ -206,11 +239,14 @@ def _leg(row: Row) -> Leg:
         return Leg(fill=LegFill.DRY if text == "dry" else LegFill.PROCESS)
     try:
         number, unit = split_quantity(text.replace(",", "."))
-        gravity = parse_unit(unit or "SG", Dimension.DENSITY).to_si(number)
+        gravity = float(parse_unit(unit or "SG", Dimension.DENSITY).to_si(number))
     except QuantityError:
-        row.fault("leg", "not a filling", row.text("leg"), "process, dry, or a specific gravity such as 1.07 SG")
+        gravity = 0.0
+    if not 0.0 < gravity <= HEAVIEST_FILL_KG_M3:
+        expected = nearest(text, ["process", "dry"]) or "process, dry, or a specific gravity such as 1.07 SG"
+        row.fault("leg", "not a filling", row.text("leg"), expected)
         return Leg()
-    return Leg(fill=LegFill.OWN, density_kg_m3=float(gravity))
+    return Leg(fill=LegFill.OWN, density_kg_m3=gravity)
 
 
 def _corrected(row: Row) -> tuple[bool, float | None]:
@@ -229,20 +265,22 @@ def _corrected(row: Row) -> tuple[bool, float | None]:
 
 def _sealed(row: Row, unit: Unit) -> float | None:
     """Pressure sealed in behind a gauge reference. [Pa absolute]"""
-    text = row.text("reference").casefold()
-    if text in ("", "vented"):
+    text = row.text("reference")
+    if text.casefold() in ("", "vented"):
         return None
     if unit.kind is not PressureKind.GAUGE:
-        row.fault("reference", "only a gauge pressure has one", row.text("reference"), "blank")
+        row.fault("reference", "only a gauge pressure has one", text, "a blank cell")
         return None
-    if text == "sealed":
+    if text.casefold() == "sealed":
         return STANDARD_ATMOSPHERE_PA
+    stated = re.fullmatch(r"sealed at\s+(.+)", text, re.IGNORECASE)
+    if not stated:
+        row.fault("reference", "unknown reference", text, "vented, sealed, or sealed at 95.0 kPa")
+        return None
     try:
-        return parse_quantity(
-            text.removeprefix("sealed at").strip(), Dimension.PRESSURE, default_kind=PressureKind.ABSOLUTE
-        )
-    except QuantityError:
-        row.fault("reference", "unknown reference", row.text("reference"), "vented, sealed, or sealed at 95.0 kPa")
+        return parse_pressure(stated[1], PressureKind.ABSOLUTE)
+    except QuantityError as error:
+        row.fault("reference", error.fault, error.found, error.expected)
         return None
 
 
@@ -263,25 +301,20 @@ def _temperature_effect(row: Row) -> float | None:
     """Temperature effect of an instrument, of its span. [1/K]"""
     text = row.text("temperature effect")
     if not text:
-        return EN_CLASS_EFFECT_PER_K if row.text("accuracy").casefold().startswith("class") else None
+        return EN_CLASS_EFFECT_PER_K if re.search(r"\bcl(?:ass|\.)", row.text("accuracy"), re.IGNORECASE) else None
     try:
         number, unit = split_quantity(text)
     except QuantityError:
-        number, unit = 0.0, ""
-    if "".join(unit.split()).casefold() not in ("%span/k", "%/k", "%span/degc"):
+        number, unit = -1.0, ""
+    if number < 0.0 or "".join(unit.split()).casefold() not in ("%span/k", "%/k", "%span/degc", "%span/°c"):
         row.fault("temperature effect", "not a share of span per kelvin", text, "0.04 % span/K")
         return None
     return number / 100.0
 
 
-def _moment(row: Row, column: str) -> datetime | None:
-    """A time, in UTC where it carries no offset."""
-    text = row.text(column)
-    if not text:
-        return None
-    try:
-        found = datetime.fromisoformat(text)
-    except ValueError:
-        row.fault(column, "not a time", text, "2026-03-02T08:00:00Z")
-        return None
-    return found if found.tzinfo else found.replace(tzinfo=UTC)
+def _hung(row: Row, zone: ZoneInfo) -> tuple[datetime | None, datetime | None]:
+    """When the instrument hung there."""
+    start, end = moment(row, "from", zone), moment(row, "until", zone)
+    if start and end and end <= start:
+        row.fault("until", "is not after from", row.text("until"), f"a time after {row.text('from')}")
+    return start, end

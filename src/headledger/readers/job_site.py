@@ -6,15 +6,14 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from datetime import datetime
 from itertools import pairwise
-from pathlib import Path
 from zoneinfo import ZoneInfo
 
-from headledger.errors import QuantityError
 from headledger.plant.job import LevelPoint, SpellKind, StatedFlow, StatedSpell
-from headledger.plant.runs import Doubt, Run
-from headledger.quantities import Dimension, parse_unit, split_quantity
+from headledger.plant.runs import Run
+from headledger.quantities import Dimension, nearest
 from headledger.readers.job_settings import COVERAGE, Defaults
-from headledger.readers.tables import Column, Problems, Row, read_table
+from headledger.readers.job_tables import flow_doubt
+from headledger.readers.tables import Column, Row, Table
 
 LEVEL_COLUMNS = {
     "run": Column(required=True),
@@ -35,7 +34,7 @@ class SpellContext:
     defaults: Defaults
 
 
-def _spell_columns(runs: Mapping[str, Run]) -> dict[str, Column]:
+def spell_columns(runs: Mapping[str, Run]) -> dict[str, Column]:
     """Every column that spells.csv may hold for these runs."""
     columns = {
         "start": Column(required=True),
@@ -49,35 +48,41 @@ def _spell_columns(runs: Mapping[str, Run]) -> dict[str, Column]:
     return columns
 
 
-def read_spells(
-    path: Path, file: str, sheet: str | None, context: SpellContext, problems: Problems
-) -> list[StatedSpell]:
+def read_spells(table: Table, context: SpellContext) -> list[StatedSpell]:
     """Stated spells, in the order of the table."""
-    table = read_table(path, file, _spell_columns(context.runs), problems, sheet=sheet)
-    spells = []
+    spells: dict[int, StatedSpell] = {}
     for row in table.rows:
-        start, end = _moment(row, "start", context.zone), _moment(row, "end", context.zone)
+        row.needed("start"), row.needed("end"), row.needed("kind")
+        start, end = moment(row, "start", context.zone), moment(row, "end", context.zone)
         kind = row.choice("kind", ("still", "flowing", "ignore"))
         if start is None or end is None:
             continue
         if end <= start:
             row.fault("end", "is not after the start", row.text("end"), f"a time after {row.text('start')}")
             continue
-        spells.append(
-            StatedSpell(
-                start_s=start, end_s=end, kind=SpellKind(kind), flows=_flows(row, context), note=row.text("note")
-            )
+        spells[row.number] = StatedSpell(
+            start_s=start.timestamp(),
+            end_s=end.timestamp(),
+            kind=SpellKind(kind),
+            flows=_flows(row, context),
+            note=row.text("note"),
         )
-    ordered = sorted(spells, key=lambda spell: spell.start_s)
-    for first, second in pairwise(ordered):
+    _check_overlap(table, spells)
+    return list(spells.values())
+
+
+def _check_overlap(table: Table, spells: Mapping[int, StatedSpell]) -> None:
+    """Note spells that overlap, each at the later row."""
+    ordered = sorted(spells.items(), key=lambda item: item[1].start_s)
+    for (number, first), (later, second) in pairwise(ordered):
         if second.start_s < first.end_s:
-            problems.add(file, "two spells overlap", "", "spells one after another")
-    return spells
+            place = f"{table.file}, row {later}, start"
+            table.problems.add(place, f"overlaps the spell of row {number}", "", "spells one after another")
 
 
-def _moment(row: Row, column: str, zone: ZoneInfo) -> float | None:
-    """A time in seconds since 1970-01-01 UTC, in the job's timezone where it carries no offset."""
-    text = row.needed(column)
+def moment(row: Row, column: str, zone: ZoneInfo) -> datetime | None:
+    """A time, in the job's timezone where it carries no offset; None where blank or faulty."""
+    text = row.text(column)
     if not text:
         return None
     try:
@@ -85,7 +90,7 @@ def _moment(row: Row, column: str, zone: ZoneInfo) -> float | None:
     except ValueError:
         row.fault(column, "not a time", text, "2026-03-02T08:00:00Z")
         return None
-    return (found if found.tzinfo else found.replace(tzinfo=zone)).timestamp()
+    return found if found.tzinfo else found.replace(tzinfo=zone)
 
 
 def _flows(row: Row, context: SpellContext) -> tuple[StatedFlow, ...]:
@@ -93,40 +98,27 @@ def _flows(row: Row, context: SpellContext) -> tuple[StatedFlow, ...]:
     flows = []
     for name in context.runs:
         value = row.quantity(f"flow {name}")
+        doubt = flow_doubt(row, f"flow {name} uncertainty", context.defaults)
         if value is not None:
-            flows.append(StatedFlow(run=name, flow_m3_s=value, doubt=_doubt(row, name, context.defaults)))
+            flows.append(StatedFlow(run=name, flow_m3_s=value, doubt=doubt))
     return tuple(flows)
 
 
-def _doubt(row: Row, name: str, defaults: Defaults) -> Doubt:
-    """Doubt of a stated flow."""
-    column = f"flow {name} uncertainty"
-    text = row.text(column)
-    if not text:
-        return Doubt(relative_fraction=defaults.flow_sd_fraction)
-    try:
-        number, unit = split_quantity(text)
-        if unit.startswith("%"):
-            return Doubt(relative_fraction=abs(number) / 100.0 / COVERAGE)
-        return Doubt(absolute=abs(float(parse_unit(unit, Dimension.FLOW).to_si(number))) / COVERAGE)
-    except QuantityError as error:
-        row.fault(column, error.fault, error.found, "±2 % or ±0.5 m3/h")
-        return Doubt()
-
-
-def read_levels(
-    path: Path, file: str, sheet: str | None, runs: Mapping[str, Run], defaults: Defaults, problems: Problems
-) -> list[LevelPoint]:
+def read_levels(table: Table, runs: Mapping[str, Run], defaults: Defaults) -> list[LevelPoint]:
     """Points of the line between stations, moved to the centreline."""
-    table = read_table(path, file, LEVEL_COLUMNS, problems, sheet=sheet)
     points = []
     for row in table.rows:
         name = row.needed("run")
         if name and name not in runs:
-            row.fault("run", "no such run", name, "one of " + ", ".join(runs))
+            row.fault("run", "no such run", name, nearest(name, runs) or "one of " + ", ".join(runs))
             continue
+        row.needed("distance"), row.needed("elevation")
         distance, elevation = row.positive("distance", zero=True), row.quantity("elevation")
-        if distance is None or elevation is None:
+        if distance is not None and name and distance > runs[name].length_m * 1.001:
+            found = f"{row.text('distance')} {table.unit_text('distance')}"
+            row.fault("distance", "is beyond the end of the run", found, f"at most {runs[name].length_m:g} m")
+            continue
+        if distance is None or elevation is None or not name:
             continue
         side = {"centreline": 0.0, "invert": 0.5, "crown": -0.5}[
             row.choice("level of", ("centreline", "invert", "crown"))

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import replace
-from pathlib import Path
 
 from headledger.errors import QuantityError
 from headledger.physics.losses import KV_FROM_CV
@@ -11,8 +11,8 @@ from headledger.plant.runs import Doubt, LossKind, PumpCurve, Run, RunState
 from headledger.plant.stations import Exchange, Station, StationKind
 from headledger.quantities import Dimension, PressureKind, Unit, parse_number, parse_unit, split_quantity
 from headledger.readers.job_settings import COVERAGE, Defaults
-from headledger.readers.pipes import fittings_k, pipe_bore_m
-from headledger.readers.tables import Column, Problems, Row, read_table
+from headledger.readers.pipes import find_pipe, fittings_k
+from headledger.readers.tables import Column, Row, Table
 
 LENGTH, PRESSURE, FLOW = Dimension.LENGTH, Dimension.PRESSURE, Dimension.FLOW
 ROUGHNESS_M = 45e-6
@@ -62,37 +62,41 @@ RUN_COLUMNS = {
     "loss uncertainty": Column(),
     "temperature": Column(dimension=Dimension.TEMPERATURE),
     "temperature column": Column(),
-    "rating": Column(dimension=PRESSURE),
+    "rating": Column(dimension=PRESSURE, kind=PressureKind.GAUGE),
     "state": Column(),
 }
 
 
-def read_stations(
-    path: Path, file: str, sheet: str | None, defaults: Defaults, problems: Problems
-) -> tuple[list[tuple[Station, str]], Unit | None]:
-    """Stations with the word that says what their elevation is of, and the unit of elevations."""
-    table = read_table(path, file, STATION_COLUMNS, problems, sheet=sheet)
+def read_stations(table: Table, defaults: Defaults) -> list[tuple[Station, str]]:
+    """Stations, each with the word that says what its elevation is of."""
     stations = []
     for row in table.rows:
         doubt = row.positive("elevation uncertainty", zero=True)
-        elevation = row.quantity("elevation")
-        if elevation is None and not row.text("elevation") and "elevation" in table.units:
-            row.fault("elevation", "is blank", "", "the elevation, in the unit of the column")
-        level_unit = _unit(row, "level unit", LENGTH) if row.text("level column") else None
-        if row.text("level column") and not row.text("level unit"):
-            row.fault("level unit", "is blank", "", "the unit of the level column")
+        row.needed("elevation")
         station = Station(
             name=row.needed("station"),
-            elevation_m=elevation or 0.0,
+            elevation_m=row.quantity("elevation") or 0.0,
             elevation_sd_m=defaults.elevation_sd_m if doubt is None else doubt / COVERAGE,
-            kind=StationKind.SURFACE if row.choice("kind", ("", "surface")) else StationKind.PIPE,
-            exchange=Exchange(row.choice("exchange", ("closed", "open"))),
+            kind=StationKind(row.choice("kind", ("", "surface", "pipe")) or "pipe"),
+            exchange=Exchange(row.choice("exchange", ("", "open", "closed")) or "closed"),
             exchange_stated=bool(row.text("exchange")),
             level_column=row.text("level column") or None,
-            level_unit=level_unit,
+            level_unit=_unit(row, "level unit", LENGTH),
         )
-        stations.append((station, row.choice("level of", ("centreline", "invert", "crown"))))
-    return stations, table.units.get("elevation")
+        if station.level_column and station.kind is not StationKind.SURFACE:
+            row.fault("level column", "only a surface has one", station.level_column, "kind surface, or a blank cell")
+        _paired(row, "level column", "level unit", "the unit of the level column, such as m")
+        level_of = row.choice("level of", ("centreline", "invert", "crown"))
+        if level_of != "centreline" and station.kind is StationKind.SURFACE:
+            row.fault("level of", "a surface has no bore", level_of, "a blank cell")
+        stations.append((station, level_of))
+    return stations
+
+
+def _paired(row: Row, column: str, other: str, expected: str) -> None:
+    """Note a cell that needs another beside it."""
+    if row.text(column) and not row.text(other):
+        row.fault(other, f"is blank beside {column} {row.text(column)}", "", expected)
 
 
 def _unit(row: Row, column: str, dimension: Dimension, kind: PressureKind | None = None) -> Unit | None:
@@ -114,18 +118,16 @@ def share_of(row: Row, column: str) -> float | None:
         return None
     try:
         number, unit = split_quantity(text)
-        factor = parse_unit(unit, Dimension.RATIO).factor
-    except QuantityError as error:
-        row.fault(column, error.fault, error.found, "±15 %")
+    except QuantityError:
+        number, unit = 0.0, ""
+    if unit != "%" or number == 0.0:
+        row.fault(column, "not a share in per cent", text, "±15 %")
         return None
-    return abs(number) * factor / COVERAGE
+    return abs(number) / 100.0 / COVERAGE
 
 
-def read_runs(
-    path: Path, file: str, sheet: str | None, defaults: Defaults, problems: Problems
-) -> tuple[list[Run], list[str]]:
-    """Runs, and what was taken from published tables, a sentence each."""
-    table = read_table(path, file, RUN_COLUMNS, problems, sheet=sheet)
+def read_runs(table: Table, defaults: Defaults) -> tuple[list[Run], list[str]]:
+    """Runs, and what was taken from published tables or for granted, a sentence each."""
     remarks: list[str] = []
     return [_run(row, defaults, remarks) for row in table.rows], remarks
 
@@ -154,32 +156,52 @@ def _run(row: Row, defaults: Defaults, remarks: list[str]) -> Run:
         pump=_pump(row),
         speed_column=row.text("speed column") or None,
         rating_pa=row.positive("rating"),
-        temperature_k=row.quantity("temperature"),
-        temperature_column=row.text("temperature column") or None,
     )
-    if (run.rated_drop_pa is None) != (run.rated_flow_m3_s is None):
-        row.fault("rated drop", "needs a rated flow beside it, and the other way round", "", "both or neither")
+    _check_run(row, run)
+    return _with_temperature(row, _with_state(row, _with_meter(row, run, defaults)), remarks)
+
+
+def _check_run(row: Row, run: Run) -> None:
+    """Note what of a run does not go together."""
+    _paired(row, "rated drop", "rated flow", "the flow at which the drop is rated")
+    _paired(row, "rated flow", "rated drop", "the drop at the rated flow")
     if run.start and run.start == run.end:
         row.fault("to", "a run must lead to another station", run.end, "two different stations")
-    return _with_state(row, _with_meter(row, run, defaults))
+    if run.roughness_m is not None and run.roughness_m >= run.bore_m:
+        unit = row.table.unit_text("roughness")
+        row.fault("roughness", "is not smaller than the bore", f"{row.text('roughness')} {unit}", "0.045 mm for steel")
+    if run.speed_column and run.pump is None:
+        row.fault("speed column", "needs a pump curve", run.speed_column, "a pump curve such as 0:32; 20:30; 40:24")
+
+
+def _with_temperature(row: Row, run: Run, remarks: list[str]) -> Run:
+    """The run with the temperature of its liquid, where it has one of its own."""
+    stated, column = row.positive("temperature"), row.text("temperature column") or None
+    unit = row.table.units.get("temperature")
+    if column and unit is None:
+        unit = parse_unit("degC", Dimension.TEMPERATURE)
+        remarks.append(f"{run.name}: its temperature column {column} is taken to be in degC.")
+    return replace(run, temperature_k=stated, temperature_column=column, temperature_unit=unit if column else None)
 
 
 def _bore(row: Row, name: str, remarks: list[str]) -> float:
     """Inside diameter, stated or from a table of pipes. [m]"""
-    bore = row.positive("bore")
-    if bore is not None:
-        return bore
-    if row.text("pipe"):
-        try:
-            found = pipe_bore_m(row.text("pipe"))
-        except QuantityError as error:
-            row.fault("pipe", error.fault, error.found, error.expected)
-            return 1.0
-        remarks.append(f"{name}: pipe {row.text('pipe')} is taken as {1000.0 * found:.1f} mm bore.")
-        return found
-    if not row.text("bore"):
-        row.fault("bore", "is blank", "", "the inside diameter, or a pipe such as DN 100 sch 40")
-    return 1.0
+    stated, words = row.positive("bore"), row.text("pipe")
+    if not words:
+        if not row.text("bore"):
+            row.fault("bore", "is blank", "", "the inside diameter, or a pipe such as DN 100 sch 40")
+        return 1.0 if stated is None else stated
+    try:
+        pipe = find_pipe(words)
+    except QuantityError as error:
+        row.fault("pipe", error.fault, error.found, error.expected)
+        return 1.0
+    size = f"bore {1000.0 * pipe.bore_m:.1f} mm, wall {1000.0 * pipe.wall_m:.2f} mm"
+    if stated is None:
+        remarks.append(f"{name}: {words} is taken as {size}.")
+        return pipe.bore_m
+    remarks.append(f"{name}: its stated bore of {1000.0 * stated:.1f} mm stands; {words} would be {size}.")
+    return stated
 
 
 def _fittings(row: Row, name: str, remarks: list[str]) -> float:
@@ -194,7 +216,7 @@ def _fittings(row: Row, name: str, remarks: list[str]) -> float:
     except QuantityError as error:
         row.fault("fittings", error.fault, error.found, error.expected)
         return stated
-    remarks.append(f"{name}: fittings {row.text('fittings')} are taken as K = {found:.2f}.")
+    remarks.append(f"{name}: {row.text('fittings')} is taken as K = {found:.2f}.")
     return stated + found
 
 
@@ -220,20 +242,17 @@ def _pump(row: Row) -> PumpCurve | None:
     if not text:
         return None
     flow, head = _unit(row, "pump flow unit", FLOW), _unit(row, "pump head unit", LENGTH)
+    _paired(row, "pump curve", "pump flow unit", "the unit of its flows, such as m3/h")
+    _paired(row, "pump curve", "pump head unit", "the unit of its heads, such as m")
     if flow is None or head is None:
-        if not row.text("pump flow unit") or not row.text("pump head unit"):
-            row.fault("pump curve", "needs its units", text, "pump flow unit and pump head unit, such as m3/h and m")
         return None
     try:
-        pairs = [
-            tuple(parse_number(n.replace(",", ".")) for n in pair.split(":"))
-            for pair in text.split(";")
-            if pair.strip()
-        ]
-        if len(pairs) < 2 or any(len(pair) != 2 for pair in pairs):
-            raise QuantityError("not a pump curve", text, "two pairs or more")
+        cells = [pair.split(":") for pair in text.split(";") if pair.strip()]
+        pairs = [tuple(parse_number(number.replace(",", ".")) for number in cell) for cell in cells]
     except QuantityError:
-        row.fault("pump curve", "not a list of flow:head pairs", text, "0:32; 20:30; 40:24")
+        pairs = []
+    if len({pair[0] for pair in pairs}) < 2 or any(len(pair) != 2 for pair in pairs):
+        row.fault("pump curve", "not a list of flow:head pairs at two flows or more", text, "0:32; 20:30; 40:24")
         return None
     return PumpCurve(
         flow_m3_s=tuple(float(flow.to_si(pair[0])) for pair in pairs),
@@ -243,29 +262,33 @@ def _pump(row: Row) -> PumpCurve | None:
 
 def _with_meter(row: Row, run: Run, defaults: Defaults) -> Run:
     """The run with its flow meter."""
-    column = row.text("flow column")
+    column, kvs = row.text("flow column"), row.positive("flow Kvs")
+    unit = _unit(row, "flow unit", PRESSURE if kvs is not None else FLOW, PressureKind.DIFFERENCE)
+    doubt = flow_doubt(row, "flow uncertainty", defaults)
+    _paired(row, "flow column", "flow unit", "the unit of the flow column, such as m3/h")
+    _paired(row, "flow Kvs", "flow column", "the log column that holds the valve's differential pressure")
     if not column:
         return run
-    kvs = row.positive("flow Kvs")
-    unit = _unit(row, "flow unit", PRESSURE if kvs is not None else FLOW, PressureKind.DIFFERENCE)
-    if not row.text("flow unit"):
-        row.fault("flow unit", "is blank", "", "the unit of the flow column, such as m3/h")
-    return replace(run, flow_column=column, flow_unit=unit, flow_kvs_m3_s=kvs, flow_doubt=_flow_doubt(row, defaults))
+    return replace(run, flow_column=column, flow_unit=unit, flow_kvs_m3_s=kvs, flow_doubt=doubt)
 
 
-def _flow_doubt(row: Row, defaults: Defaults) -> Doubt:
-    """Standard uncertainty of a meter: a share of its reading, or a flow."""
-    text = row.text("flow uncertainty")
+def flow_doubt(row: Row, column: str, defaults: Defaults) -> Doubt:
+    """Standard uncertainty of a flow from its cell: a share of the flow, or a flow; the job's where blank."""
+    text, doubt = row.text(column), Doubt(relative_fraction=defaults.flow_sd_fraction)
     if not text:
-        return Doubt(relative_fraction=defaults.flow_sd_fraction)
+        return doubt
     try:
         number, unit = split_quantity(text)
-        if unit.startswith("%"):
-            return Doubt(relative_fraction=abs(number) / 100.0 / COVERAGE)
-        return Doubt(absolute=abs(float(parse_unit(unit, FLOW).to_si(number))) / COVERAGE)
+        if re.fullmatch(r"%(?: of)?(?: reading| rdg)?", unit.strip()):
+            doubt = Doubt(relative_fraction=abs(number) / 100.0 / COVERAGE)
+        else:
+            doubt = Doubt(absolute=abs(float(parse_unit(unit, FLOW).to_si(number))) / COVERAGE)
     except QuantityError as error:
-        row.fault("flow uncertainty", error.fault, error.found, "±2 % or ±0.5 m3/h")
-        return Doubt(relative_fraction=defaults.flow_sd_fraction)
+        row.fault(column, error.fault, error.found, "±2 % or ±0.5 m3/h")
+        return doubt
+    if number == 0.0:
+        row.fault(column, "must be positive", text, "±2 % or ±0.5 m3/h")
+    return doubt
 
 
 def _with_state(row: Row, run: Run) -> Run:

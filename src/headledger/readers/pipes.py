@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import re
+from dataclasses import dataclass
+from fractions import Fraction
 
 from headledger.errors import QuantityError
 from headledger.quantities import nearest
@@ -37,7 +39,8 @@ DN_OF_INCH: dict[float, int] = {
 }  # fmt: skip
 
 FITTINGS_K: dict[str, float] = {
-    # K = (L/D) f_T with f_T = 0.017 of DN 100; entrance and exit as printed (Crane, Technical Paper 410, A-27 to A-29, from memory)
+    # K = (L/D) f_T with f_T = 0.017 of DN 100; entrance and exit as printed
+    # (Crane, Technical Paper 410, pages A-27 to A-29, from memory)
     "elbow": 30 * 0.017,
     "45 elbow": 16 * 0.017,
     "long elbow": 14 * 0.017,
@@ -60,6 +63,8 @@ SYNONYMS: dict[str, str] = {
     "branch tee": "tee branch",
     "check valve": "swing check valve",
 }
+
+_FITTING_NAMES: dict[str, str] = {name: name for name in FITTINGS_K} | SYNONYMS
 
 EXAMPLE = "DN 100 sch 40, 4 in sch 40 or 160 SDR 11"
 
@@ -105,8 +110,8 @@ def find_pipe(text: str) -> Pipe:
     size = int(steel[1]) if steel[1] else DN_OF_INCH.get(_inches(steel[2]), 0)
     outside_mm, walls = STEEL_MM.get(size, (0.0, {}))
     schedule = {"std": "40" if size <= 250 else "", "xs": "80" if size <= 200 else ""}.get(steel[3], steel[3])
-    wall_mm = walls.get(schedule)
-    if wall_mm is None:
+    wall_mm = walls.get(schedule, 0.0)
+    if not wall_mm:
         known = f"schedule {', '.join(walls)} in this size" if walls else "DN " + ", ".join(map(str, STEEL_MM))
         raise QuantityError("not a pipe of the tables", repr(text), f"{known}; or give the bore")
     return Pipe(bore_m=(outside_mm - 2.0 * wall_mm) / 1000.0, wall_m=wall_mm / 1000.0)
@@ -136,13 +141,19 @@ def fittings_k(text: str) -> float:
     """
     total = 0.0
     for part in re.split(r"[,;]", text):
-        match = re.fullmatch(r"\s*(?:(\d+)\s*(?:x\s+|×\s*|\s))?\s*(.+?)\s*", part)
-        name = _singular(match[2]) if match else ""
-        known = SYNONYMS.get(name, name)
-        if match and match[1] and known not in FITTINGS_K and f"{match[1]} {name}" in (*FITTINGS_K, *SYNONYMS):
-            match, known = None, f"{match[1]} {name}"
-        if known not in FITTINGS_K:
-            expected = nearest(known, [*FITTINGS_K, *SYNONYMS]) or "one of " + ", ".join(FITTINGS_K)
+        count, name = _count_and_name(part)
+        if name not in _FITTING_NAMES:
+            expected = nearest(name, _FITTING_NAMES) or "one of " + ", ".join(FITTINGS_K)
             raise QuantityError("not a fitting of the table", repr(part.strip()), expected)
-        total += int(match[1] or 1) * FITTINGS_K[known]
+        total += count * FITTINGS_K[_FITTING_NAMES[name]]
     return total
+
+
+def _count_and_name(part: str) -> tuple[int, str]:
+    """How many of what: ``6 elbows`` is six of elbow, ``45 elbow`` one of its own kind."""
+    plain = " ".join(re.sub(r"°|\bdeg\b", " ", part.casefold()).split())
+    plain = re.sub(r"(?<=[a-z])s\b", "", plain)
+    counted = re.fullmatch(r"(\d+)(?: ?[x×])? (.+)", plain)
+    if plain in _FITTING_NAMES or not counted:
+        return 1, plain
+    return int(counted[1]), counted[2]
