@@ -8,7 +8,10 @@ import zlib
 from pathlib import Path
 from typing import Any
 
+import numpy as np
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 
 from headledger.errors import JobError
 from headledger.plant.job import LogSettings
@@ -172,3 +175,29 @@ def test_stated_line_that_is_not_there_is_refused(tmp_path: Path) -> None:
         "job.toml, [log] header_line: there is no such line, got 9, "
         "expected a line of log.csv that is not blank, within its first 4."
     )
+
+
+@given(
+    edits=st.lists(
+        st.tuples(
+            st.integers(0, 110),
+            st.sampled_from([b",", b"\n", b'"', b";", b"\r", b"\0", b"", b"\xff", b"9", b" ", b"x"]),
+        ),
+        max_size=12,
+    ),
+    doubled=st.booleans(),
+)
+def test_spoilt_log_is_read_with_every_row_accounted_for_or_refused(
+    tmp_path_factory: pytest.TempPathFactory, edits: list[tuple[int, bytes]], doubled: bool
+) -> None:
+    content = PLAIN.encode() + (PLAIN.encode().split(b"\n", 1)[1] if doubled else b"")
+    for place, edit in edits:
+        content = content[:place] + edit + content[place + 1 :]
+    try:
+        digest = read(tmp_path_factory.mktemp("spoilt"), content)
+    except JobError:
+        return
+    row_rejects = sum(not reject.column and reject.why != "stamp goes backward" for reject in digest.rejects)
+    assert digest.rows.sum() + row_rejects == digest.row_count
+    assert digest.reject_count == len(digest.rejects) == sum(number for _, number in digest.reject_reasons)
+    assert np.isfinite(digest.mean[digest.count > 0]).all()

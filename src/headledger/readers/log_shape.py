@@ -114,8 +114,9 @@ class _Look:
 
 
 def split_line(line: str, delimiter: str) -> list[str]:
-    """Cells of one line."""
-    if '"' not in line:
+    """Cells of one line; a carriage return within it says nothing."""
+    line = line.replace("\r", "")
+    if '"' not in line or len(line) > csv.field_size_limit():
         return line.split(delimiter)
     return next(csv.reader([line], delimiter=delimiter), [])
 
