@@ -1,6 +1,6 @@
 """README shows what the tool prints: each ``$ headledger`` line is run, and what follows it is compared word for word.
 
-    python -m tests.test_readme        writes the present output into README.md
+python -m tests.test_readme        writes the present output into README.md
 """
 
 from __future__ import annotations
@@ -13,7 +13,8 @@ from pathlib import Path
 
 import pytest
 
-from headledger.__main__ import main
+from headledger.cli.exit_codes import ExitCode
+from headledger.cli.main import main
 
 README = Path(__file__).parent.parent / "README.md"
 SHOWN = re.compile(r"```console\n\$ headledger (?P<command>[^\n]*)\n(?P<output>.*?)```", re.DOTALL)
@@ -23,11 +24,14 @@ def printed(command: str) -> str:
     """Standard output of a command."""
     out = io.StringIO()
     with contextlib.redirect_stdout(out):
-        main(shlex.split(command))
+        code = main(shlex.split(command))
+    assert code in (ExitCode.SOUND, ExitCode.TROUBLE)
     return out.getvalue()
 
 
-@pytest.mark.parametrize("match", list(SHOWN.finditer(README.read_text(encoding="utf-8"))), ids=lambda m: m["command"][:24])
+@pytest.mark.parametrize(
+    "match", list(SHOWN.finditer(README.read_text(encoding="utf-8"))), ids=lambda m: m["command"][:24]
+)
 def test_readme_output_is_what_the_command_prints(match: re.Match[str]) -> None:
     assert match["output"] == printed(match["command"])
 

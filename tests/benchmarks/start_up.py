@@ -1,6 +1,6 @@
 """Start-up: a whole check of each sample in a cold process, as a multiple of importing numpy and pandas; help against a bare Python.
 
-    python tests/benchmarks/start_up.py [ROUNDS]
+python tests/benchmarks/start_up.py [ROUNDS]
 """
 
 from __future__ import annotations

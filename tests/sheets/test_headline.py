@@ -45,7 +45,7 @@ def test_accepted_cause_under_passing_gauges_is_trouble_all_the_same(sound_resul
 def test_rivals_of_one_kind_ask_for_the_place(sound_result: CheckResult):
     rival = Rival(kind=CauseKind.BLOCKAGE, place=Place(run="R3"), probability=0.4)
     said = answers(replace(sound_result, causes=(replace(BLOCKAGE, rivals=(rival,)),), clean_probability=0.01))
-    assert said["What next?"] == "Find out on site where the blockage is: run R2 or run R3."
+    assert said["What next?"] == "Find out on site where it is, a blockage: run R2 or run R3."
 
 
 def test_nothing_checked_says_so_and_what_would_help(sound_result: CheckResult):

@@ -65,7 +65,7 @@ class SpellRows:
     @property
     def count(self) -> int:
         """Number of rows."""
-        return len(self.gauges) + len(self.meters) + len(self.levels) + self.loops
+        return sum(int(part.size) for part in (self.gauges, self.meters, self.levels)) + self.loops
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -96,7 +96,7 @@ class Linear:
     @property
     def row_count(self) -> int:
         """Number of rows of the stacked data."""
-        return self.calibration.shape[0]
+        return int(self.calibration.shape[0])
 
     def gauge_rows(self, gauge: int) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
         """Rows of one gauge in the stacked data, and the spells they belong to."""

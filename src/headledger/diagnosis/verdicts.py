@@ -25,6 +25,9 @@ WIDENED = 10.0
 UNCHECKED_SHARE = 0.8
 """Part of the widened prior's standard deviation beyond which nothing else in the data determines a gauge. [-]"""
 
+SUSPECTED = 0.2
+"""A gauge with a cause of its own at least this probable is never merely unchecked. [-]"""
+
 WEIGHT_JUDGED = 0.998
 """Verdicts are averaged over the leading explanations that together hold this much; the rest cannot move one by more. [-]"""
 
@@ -238,13 +241,21 @@ def judge_gauge(model: Model, posterior: Posterior, gauge: int) -> Judged:
     _, spells = posterior.leading.frame.linear.gauge_rows(gauge)
     state = posterior.leading.frame.linear.states[int(spells[worst])]
     outside = outside_probability(model, posterior, gauge)
+    # where a cause of its own stands beside one in the pipe, the two explain the readings alike: that is no want of readings
+    suspected = own_cause_probability(posterior, gauge) >= SUSPECTED
+    unchecked = bool(leading.left_fraction[worst] > UNCHECKED_SHARE) and not suspected
     return Judged(
-        verdict=decide(outside, unchecked=bool(leading.left_fraction[worst] > UNCHECKED_SHARE), settings=settings),
+        verdict=decide(outside, unchecked=unchecked, settings=settings),
         outside_probability=outside,
         error_pa=float(leading.mean_pa[worst]),
         u95_pa=2.0 * float(leading.sd_pa[worst]),
         tolerance_pa=noun.tolerance_at(float(state.reading_pa[gauge])),
     )
+
+
+def own_cause_probability(posterior: Posterior, gauge: int) -> float:
+    """Probability that some cause of a gauge's own is present. [-]"""
+    return sum(e.probability for e in posterior.explanations if any(gauge in e.frame.marks[i].own for i in e.chosen))
 
 
 def outside_probability(model: Model, posterior: Posterior, gauge: int) -> float:

@@ -64,9 +64,7 @@ def _parse_part(part: str, span_pa: float) -> tuple[float, float, float]:
             raise QuantityError("unknown grade", repr(part), "grade " + ", ".join(ASME_GRADES))
         outer, middle = ASME_GRADES[grade[1].upper()]
         return middle / 100.0 * span_pa, outer / 100.0 * span_pa, 0.0
-    share = re.fullmatch(
-        r"([\d.,eE+-]+)\s*%\s*(?:of\s+)?(span|fs|full scale|reading|rdg)", plain, re.IGNORECASE
-    )
+    share = re.fullmatch(r"([\d.,eE+-]+)\s*%\s*(?:of\s+)?(span|fs|full scale|reading|rdg)", plain, re.IGNORECASE)
     if share:
         value = parse_number(share[1].replace(",", ".")) / 100.0
         if share[2].casefold() in ("reading", "rdg"):

@@ -183,7 +183,7 @@ def _next_of(cause: CauseFound) -> str:
     names = list(dict.fromkeys(kinds))
     if len(names) == 1:
         places = [place_label(place) for place in (cause.place, *(rival.place for rival in near))]
-        return f"Find out on site where the {names[0]} is: {_listed(places, last='or')}."
+        return f"Find out on site where it is, {names[0]}: {_listed(places, last='or')}."
     return f"Find out on site whether it is {_listed(names, last='or')}."
 
 
