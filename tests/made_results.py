@@ -52,7 +52,8 @@ BLOCKAGE = CauseFound(
     probability=0.55,
     accepted=False,
     rivals=(Rival(kind=CauseKind.SPAN_ERROR, place=Place(gauge="PT-4"), probability=0.42),),
-    says="Run R2 loses 0.31 bar more than the 0.12 bar expected at 36 m3/h.",
+    says="Run R2 loses 0.31 bar more than the 0.12 bar expected at 36 m3/h. "
+    "Or it is a span error at PT-4 (42 %): these readings cannot tell which.",
 )
 
 

@@ -118,7 +118,7 @@ async def test_findings_screen_shows_answers_gauges_and_findings(troubled_result
             ["✓ pass", "PT-1"],
             ["✓ pass", "PT-2"],
         ]
-        assert "Or: span-error at PT-4 (42 %)" in shown(app, ".finding")
+        assert "Or it is a span error at PT-4 (42 %)" in shown(app, ".finding")
         assert app.ending is Ending.FOUND
 
 

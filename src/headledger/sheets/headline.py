@@ -11,6 +11,7 @@ from headledger.sheets.numbers import percent
 from headledger.sheets.outcome import CLEAN_FLOOR, Outcome, outcome_of
 
 # A cause with its rivals leads where together they are more likely than not.
+_TOLD_FROM, _MOST_TOLD = 0.05, 8
 _LEADING_WEIGHT = 0.5
 # One side is named alone where it holds this share of a cause and its rivals.
 _ONE_SIDE = 0.9
@@ -84,11 +85,14 @@ def cause_label(cause: CauseFound | Rival) -> str:
     return f"{cause.kind.value} at {place_label(cause.place)}"
 
 
-def rivals_line(cause: CauseFound) -> str:
-    """The causes that the data cannot tell from this one, each with its probability; empty if there is none."""
-    if not cause.rivals:
-        return ""
-    return "Or: " + "; ".join(f"{cause_label(rival)} ({percent(rival.probability)})" for rival in cause.rivals)
+def told_causes(causes: Iterable[CauseFound]) -> tuple[tuple[CauseFound, ...], str]:
+    """The causes worth telling, and a line that counts the rest; what is improbable would bury what matters."""
+    causes = tuple(causes)
+    told = tuple(cause for cause in causes if cause.probability >= _TOLD_FROM)[:_MOST_TOLD]
+    left = [cause.probability for cause in causes if cause not in told]
+    if not left:
+        return told, ""
+    return told, f"{len(left)} more, none above {percent(max(left))}; the result file (--json) lists them."
 
 
 def _anything_wrong(result: CheckResult) -> str:

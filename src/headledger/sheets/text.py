@@ -15,7 +15,7 @@ from rich.text import Text
 
 from headledger.diagnosis.result import CauseFound, CheckResult, GaugeFound, Verdict
 from headledger.sheets.columns import error_columns, flows_line
-from headledger.sheets.headline import cause_label, headline
+from headledger.sheets.headline import cause_label, headline, told_causes
 from headledger.sheets.marks import CAUTIONS, by_trouble, verdict_label
 from headledger.sheets.numbers import clock_range, percent
 
@@ -26,9 +26,6 @@ _STYLES = {
     Verdict.PASS: "blue",
 }
 _MOST_REJECTS = 10
-_MOST_FINDINGS = 8
-# What is less probable is counted, not told: it would bury what matters.
-_TOLD_FROM = 0.05
 _MOST_REMARKS = 20
 # Square brackets are units and colons are times, never markup or pictures.
 _TEXT_AS_IT_IS: dict[str, Any] = {"highlight": False, "markup": False, "emoji": False}
@@ -145,15 +142,12 @@ def _why_lines(gauges: Iterable[GaugeFound]) -> Iterator[Table]:
 
 
 def _finding_lines(causes: Iterable[CauseFound]) -> Iterator[Table]:
-    causes = list(causes)
-    told = [cause for cause in causes if cause.probability >= _TOLD_FROM][:_MOST_FINDINGS]
+    told, rest = told_causes(causes)
     for cause in told:
         body = Text("\n".join([cause_label(cause) + (" (accepted)" if cause.accepted else ""), cause.says]))
         yield _hanging(Text(percent(cause.probability).rjust(6), style="bold"), body, label_width=6)
-    left = len(causes) - len(told)
-    if left:
-        together = f"none above {percent(max(c.probability for c in causes if c not in told))}"
-        yield _hanging("", Text(f"{left} more, {together}: the result file (--json) lists them."), label_width=6)
+    if rest:
+        yield _hanging("", Text(rest), label_width=6)
 
 
 def _reject_lines(result: CheckResult) -> Iterator[Table | Text]:

@@ -8,7 +8,7 @@ from textual.content import Content
 from textual.widgets import Static
 
 from headledger.diagnosis.result import CauseFound
-from headledger.sheets.headline import cause_label, rivals_line
+from headledger.sheets.headline import cause_label, told_causes
 from headledger.sheets.numbers import percent
 
 
@@ -29,12 +29,14 @@ class FindingsList(Vertical):
         yield Static("Findings", classes="heading")
         if not self._causes:
             yield Static("No cause has weight.", classes="finding")
-        for cause in self._causes:
+        told, rest = told_causes(self._causes)
+        for cause in told:
             yield Static(_block(cause), classes="finding accepted" if cause.accepted else "finding")
+        if rest:
+            yield Static(Content(rest), classes="finding")
 
 
 def _block(cause: CauseFound) -> Content:
     accepted = " (accepted)" if cause.accepted else ""
     first = Content.styled(f"{percent(cause.probability)}  {cause_label(cause)}{accepted}", "bold")
-    rest = [Content(line) for line in (cause.says, rivals_line(cause)) if line]
-    return Content("\n").join([first, *rest])
+    return Content("\n").join([first, Content(cause.says)])
