@@ -47,7 +47,7 @@ def test_check_of_trouble_prints_the_report_and_is_1(
     assert main(["check", str(tmp_path)]) == 1
     captured = capsys.readouterr()
     assert "PT-3 reads 0.21 bar high at every flow." in captured.out
-    assert captured.err == "Not checked, since nothing else in the data determines the pressure there: PT-5.\n"
+    assert captured.err == "Not checked, for want of a reading or of anything else that determines it: PT-5.\n"
     assert calls[0][0] == tmp_path
 
 

@@ -78,7 +78,7 @@ ACCURACIES = "class 1.6, grade 2A, 0.25 % span, 0.5 % reading, ±0.02 bar, or a 
         (GAUGES, "PT-2,S2", "PT-2,pump",
          "gauges.csv, row 3, station: no such station, got pump, expected one of S1, S2, S3."),
         (GAUGES, "PT-2,S2", "PT-2,", "gauges.csv, row 3, station: is blank, expected a value in every row."),
-        (GAUGES, "DP-1,S1,S2", "DP-1,S1,T2", "gauges.csv, row 4, low station: no such station, got T2, expected S2."),
+        (GAUGES, "DP-1,S1,S2", "DP-1,S1,T2", "gauges.csv, row 4, low station: no such station, got T2, expected one of S1, S2, S3."),
         (GAUGES, "DP-1,S1,S2", "DP-1,S1,S1",
          "gauges.csv, row 4, low station: is the station itself, got S1, expected the tap of the low side."),
         (GAUGES, "barg,0,10", "brag,0,10", "gauges.csv, row 2, unit: unknown unit, got 'brag', expected barg."),
@@ -223,7 +223,7 @@ def test_all_problems_of_all_files_are_said_at_once(job_folder):
     ("header", "cell", "message"),
     [
         ("run", "R2", "gauges.csv, row 2, run: does not touch the gauge's station, got R2, expected R1."),
-        ("run", "R9", "gauges.csv, row 2, run: no such run, got R9, expected R1."),
+        ("run", "R9", "gauges.csv, row 2, run: no such run, got R9, expected one of R1, R2."),
         ("leg", "dri", "gauges.csv, row 2, leg: not a filling, got dri, expected dry."),
         ("leg", "-1 SG",
          "gauges.csv, row 2, leg: not a filling, got -1 SG, "
@@ -323,7 +323,7 @@ def test_stated_spell_that_cannot_be_used_is_said(job_folder, rows, message):
 @pytest.mark.parametrize(
     ("row", "message"),
     [
-        ("R3,0,2", "levels.csv, row 2, run: no such run, got R3, expected R1."),
+        ("R3,0,2", "levels.csv, row 2, run: no such run, got R3, expected one of R1, R2."),
         ("R1,41,2", "levels.csv, row 2, distance: is beyond the end of the run, got 41 m, expected at most 40 m."),
         ("R1,0,", "levels.csv, row 2, elevation: is blank, expected a value in every row."),
     ],

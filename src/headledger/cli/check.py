@@ -90,4 +90,4 @@ def _write_json(result: CheckResult, json_path: str) -> None:
 def _name_unchecked(result: CheckResult) -> None:
     tags = [gauge.tag for gauge in result.gauges if gauge.verdict.value == "unchecked"]
     if tags:
-        say(f"Not checked, since nothing else in the data determines the pressure there: {', '.join(tags)}.")
+        say(f"Not checked, for want of a reading or of anything else that determines it: {', '.join(tags)}.")

@@ -1,1 +1,1 @@
-"""."""
+"""The heart: digest and plant to result."""

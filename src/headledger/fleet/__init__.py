@@ -1,1 +1,1 @@
-"""."""
+"""Many jobs over a standard executor. Empty as yet."""

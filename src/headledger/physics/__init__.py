@@ -1,1 +1,1 @@
-"""."""
+"""SI in, SI out: liquids, earth, friction, losses, networks, taps; each formula with its source."""

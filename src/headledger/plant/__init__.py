@@ -1,1 +1,1 @@
-"""."""
+"""The nouns of a job: frozen dataclasses that know their own consistency."""

@@ -63,12 +63,13 @@ def read_job(folder: Path | str, *, logs_needed: bool = True) -> Job:
     spells, levels = _optional(files, run_list, timezone, defaults)
     liquid, site, log = read_liquid(sections["liquid"]), read_site(sections["site"]), read_log_settings(sections["log"])
     log_files, log_remarks = files.logs(needed=logs_needed)
+    texts = {key: sections["job"].text(key) for key in ("title", "site", "prepared_by")}
     problems.raise_if_any()
     job = Job(
         folder=folder,
-        title=sections["job"].text("title") or folder.resolve().name,
-        site_name=sections["job"].text("site"),
-        prepared_by=sections["job"].text("prepared_by"),
+        title=texts["title"] or folder.resolve().name,
+        site_name=texts["site"],
+        prepared_by=texts["prepared_by"],
         timezone=timezone.key,
         stations=tuple(_with_exchange(_at_centreline(station, of, run_list), run_list) for station, of in placed),
         runs=tuple(run_list),

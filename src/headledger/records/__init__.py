@@ -1,1 +1,1 @@
-"""."""
+"""Durable writes: decisions and walks. Empty as yet."""
