@@ -170,7 +170,8 @@ def test_job_file_with_a_byte_order_mark_is_read(job_folder):
 def test_accuracy_is_a_limit_by_quarter_and_reading(text, middle_pa, outer_pa, reading):
     limit = parse_limit(text, 1e6)
     assert (limit.limit_pa, limit.outer_limit_pa) == pytest.approx((middle_pa, outer_pa))
-    assert (limit.reading_fraction, limit.text) == (pytest.approx(reading), text)
+    assert limit.reading_fraction == pytest.approx(reading)
+    assert limit.text == text
 
 
 def test_graded_limit_changes_at_the_quarters_which_belong_to_the_middle():

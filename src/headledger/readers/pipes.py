@@ -103,7 +103,7 @@ def find_pipe(text: str) -> Pipe:
     if plastic and float(plastic[2]) > 2.0 and float(plastic[1]) > 0.0:
         outside_mm, wall_mm = float(plastic[1]), float(plastic[1]) / float(plastic[2])
         return Pipe(bore_m=(outside_mm - 2.0 * wall_mm) / 1000.0, wall_m=wall_mm / 1000.0)
-    number = r"\d+(?:\.\d+)?|\d+[ -]\d/\d|\d/\d"
+    number = r"\d+(?:\.\d+)?|\d+[ -]\d/[248]|\d/[248]"
     steel = re.fullmatch(rf'(?:dn ?(\d+)|({number}) ?(?:in|inch|"))\.?,? (?:sch|schedule)\.? ?(\d+|std|xs)s?', plain)
     if not steel:
         raise QuantityError("not a pipe in words", repr(text), f"{EXAMPLE}; or give the bore")
@@ -152,7 +152,7 @@ def fittings_k(text: str) -> float:
 def _count_and_name(part: str) -> tuple[int, str]:
     """How many of what: ``6 elbows`` is six of elbow, ``45 elbow`` one of its own kind."""
     plain = " ".join(re.sub(r"°|\bdeg\b", " ", part.casefold()).split())
-    plain = re.sub(r"(?<=[a-z])s\b", "", plain)
+    plain = re.sub(r"(?<=[a-z])s$|(?<=branch)es$", "", plain)
     counted = re.fullmatch(r"(\d+)(?: ?[x×])? (.+)", plain)
     if plain in _FITTING_NAMES or not counted:
         return 1, plain
