@@ -82,6 +82,12 @@ class JobFolder:
         return [str(problem) for problem in caught.value.problems]
 
 
+@pytest.fixture(scope="session")
+def sound_files() -> dict[str, str]:
+    """The files of a sound job folder."""
+    return dict(SOUND)
+
+
 @pytest.fixture
 def job_folder(tmp_path: Path) -> JobFolder:
     """A sound job folder."""

@@ -382,6 +382,14 @@ def test_free_loss_and_own_temperature_are_said_to_be_unused(job_folder):
     assert any("temperature" in remark and "not used yet" in remark for remark in said)
 
 
+def test_what_only_a_hold_needs_is_said_to_be_unused(job_folder):
+    run(job_folder, "bore [mm],rating [bar]", "100,16")
+    job_folder.change("job.toml", "[check]", '[hold]\nat = "S1"\n\n[check]')
+    said = unused_yet(job_folder.read())
+    assert [remark.partition(":")[0] for remark in said] == ["runs", "[hold]"]
+    assert all("not used yet" in remark for remark in said)
+
+
 def test_run_that_ends_at_a_surface_without_k_is_said(job_folder):
     job_folder.change("runs.csv", "R2,S2,S3,25,80,,1,,", "R2,S2,S3,25,80,,,,")
     assert "R2: ends at the surface S3 with no K; an exit is K = 1." in job_folder.read().remarks

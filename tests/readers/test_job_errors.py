@@ -132,6 +132,10 @@ ACCURACIES = "class 1.6, grade 2A, 0.25 % span, 0.5 % reading, ±0.02 bar, or a 
         (TOML, '"water"', '"propylene-glycol"\nconcentration = "30"',
          "job.toml, [liquid] concentration: not a concentration, got '30', "
          'expected "30 %" by mass or "30 % vol" by volume.'),
+        (TOML, '"water"', '"propylene-glycol"\nconcentration = "95 %"',
+         "job.toml, [liquid] concentration: is outside the table of this liquid, got 95 %, expected 0 to 60 %."),
+        (TOML, '"18 degC"', '"218 degC"',
+         "job.toml, [liquid] temperature: is outside the table of this liquid, got 218 °C, expected 0.01 to 180 °C."),
         (TOML, '"water"', '"other"',
          'job.toml, [liquid] density: is missing for other, expected density = "870 kg/m3".'),
         (TOML, '"98.9 kPa"', '"98.9 kPag"',

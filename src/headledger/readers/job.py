@@ -101,6 +101,10 @@ def unused_yet(job: Job) -> tuple[str, ...]:
         remarks.append("runs: temperatures of their own are not used yet; the job's liquid temperature stands.")
     if job.site.barometer_column:
         remarks.append("barometer: its log column is not used yet; the standard atmosphere stands in.")
+    if any(run.rating_pa is not None for run in job.runs):
+        remarks.append("runs: ratings are not used yet; they limit a pressure hold.")
+    if job.hold:
+        remarks.append("[hold]: not used yet; a check does not look at holds.")
     if any(run.item.casefold() == "check valve" for run in job.runs):
         remarks.append("check valves: not used yet; at rest both sides are taken as one head.")
     return tuple(remarks)

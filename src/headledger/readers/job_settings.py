@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import Any
 
 from headledger.errors import JobError, Problem, QuantityError
+from headledger.physics.liquids import liquid_properties
 from headledger.plant.job import CheckSettings, DecisionRule, LiquidKind, LiquidSpec, LogSettings, Site
 from headledger.quantities import (
     Dimension,
@@ -79,9 +80,11 @@ class Section:
 
     def __init__(self, name: str, values: dict[str, Any], problems: Problems) -> None:
         self.name, self.values, self._problems = name, values, problems
+        self.faulty = False
 
     def fault(self, key: str, fault: str, found: str = "", expected: str = "") -> None:
         """Note a problem of a key."""
+        self.faulty = True
         self._problems.add(f"{FILE}, [{self.name}] {key}", fault, found, expected)
 
     def text(self, key: str, default: str = "") -> str:
@@ -227,7 +230,7 @@ def read_liquid(section: Section) -> LiquidSpec:
     density_doubt = section.share("density_uncertainty", "±0.1 %")
     concentration, by_volume = _concentration(section, kind)
     _check_belonging(section, kind)
-    return LiquidSpec(
+    spec = LiquidSpec(
         kind=LiquidKind(kind),
         concentration_fraction=concentration,
         concentration_by_volume=by_volume,
@@ -241,6 +244,27 @@ def read_liquid(section: Section) -> LiquidSpec:
         vapour_pressure_pa=section.positive("vapour_pressure", Dimension.PRESSURE, "0.5 kPa", PressureKind.ABSOLUTE),
         density_sd_fraction=abs(DENSITY_UNSTATED if density_doubt is None else density_doubt) / COVERAGE,
     )
+    if not section.faulty:
+        _check_tables(section, spec)
+    return spec
+
+
+def _check_tables(section: Section, spec: LiquidSpec) -> None:
+    """Note a liquid that is outside the tables of its properties."""
+    try:
+        liquid_properties(
+            kind=str(spec.kind),
+            temperature_k=spec.temperature_k,
+            concentration_fraction=spec.concentration_fraction,
+            by_volume=spec.concentration_by_volume,
+            salinity_g_kg=spec.salinity_g_kg,
+            density_kg_m3=spec.density_kg_m3,
+            viscosity_pa_s=spec.viscosity_pa_s,
+            vapour_pressure_pa=spec.vapour_pressure_pa,
+        )
+    except QuantityError as error:
+        key, _, fault = error.fault.partition(" ")
+        section.fault(key if key in KEYS["liquid"] else "kind", fault, error.found, error.expected)
 
 
 def _check_belonging(section: Section, kind: str) -> None:
