@@ -111,6 +111,13 @@ def test_run_with_hazen_williams_has_no_roughness(job_folder):
     assert (found.hazen_williams_c, found.roughness_m) == (130.0, None)
 
 
+def test_hazen_williams_beside_another_liquid_than_water_is_warned_of(job_folder):
+    run(job_folder, "bore [mm],hazen-williams C", "100,130")
+    said = "R1, R2: Hazen–Williams holds for water only, and the liquid is seawater."
+    assert said not in job_folder.read().remarks
+    assert said in job_folder.change("job.toml", '"water"', '"seawater"').read().remarks
+
+
 @pytest.mark.parametrize(
     ("header", "cell", "kv_m3_s"),
     [
@@ -220,7 +227,10 @@ def test_gauge_without_a_run_sits_on_the_widest_that_ends_at_its_station_else_on
         "run,from,to,length [m],bore [mm],roughness [mm]\n"
         "R1,S1,S2,10,80,0.05\nR2,S3,S2,10,150,0.05\nR3,S1,S2,10,100,0.05\n",
     )
-    assert [g.run for g in job_folder.read().gauges] == ["R1", "R2", "R1"]
+    job = job_folder.read()
+    assert [g.run for g in job.gauges] == ["R1", "R2", "R1"]
+    assert "PT-2: taken to sit on R2, which ends at S2 wider than R1, R3." in job.remarks
+    assert not any(remark.startswith(("PT-1: taken", "DP-1: taken")) for remark in job.remarks)
 
 
 def test_tolerance_is_its_own_else_the_jobs_else_the_accuracy(job_folder):

@@ -182,6 +182,11 @@ def _taken_for_granted(job: Job) -> list[str]:
             remarks.append(f"{run.name}: ends at the surface {run.end} with no K; an exit is K = 1.")
         if run.start in surfaces and run.fittings_k == 0.0:
             remarks.append(f"{run.name}: starts at the surface {run.start} with no K; an entrance is about K = 0.5.")
+    williams = [run.name for run in job.runs if run.hazen_williams_c is not None]
+    if williams and job.liquid.kind is not LiquidKind.WATER:
+        remarks.append(
+            f"{', '.join(williams)}: Hazen–Williams holds for water only, and the liquid is {job.liquid.kind}."
+        )
     if job.liquid.kind is LiquidKind.SEAWATER and job.liquid.salinity_g_kg is None:
         remarks.append("salinity: not stated; 35 g/kg is taken.")
     if job.liquid.kind is LiquidKind.OTHER and job.liquid.viscosity_pa_s is None:

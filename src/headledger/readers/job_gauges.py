@@ -91,13 +91,19 @@ class GaugeContext:
 
 
 def read_gauges(table: Table, context: GaugeContext) -> tuple[list[Gauge], list[str]]:
-    """Gauges, and warnings about their tolerances, a sentence each."""
+    """Gauges, and what was taken for granted or is to be warned of, a sentence each."""
     gauges, remarks = [], []
     for row in table.rows:
         gauge = _gauge(row, context)
         if gauge is None:
             continue
         gauges.append(gauge)
+        ending = [run for run in context.runs if run.end == gauge.station]
+        if not row.text("run") and len({run.bore_m for run in ending}) > 1:
+            others = ", ".join(run.name for run in ending if run.name != gauge.run)
+            remarks.append(
+                f"{gauge.tag}: taken to sit on {gauge.run}, which ends at {gauge.station} wider than {others}."
+            )
         if _is_tight(gauge):
             remarks.append(
                 f"{gauge.tag}: its tolerance ({gauge.tolerance.text}) is tighter than its accuracy "
