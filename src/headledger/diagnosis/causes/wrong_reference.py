@@ -9,6 +9,9 @@ from headledger.statistics.sizes import SizePrior
 SEALED_PA = 101_325.0
 """Pressure that a sealed case holds unless stated otherwise: the standard atmosphere. [Pa absolute]"""
 
+SEALED_SHARE = 0.2
+"""Part of the prior that goes to a sealed case; gauge taken for absolute is the common mistake (common practice). [-]"""
+
 
 def marks(view: View) -> list[Mark]:
     """Up to two marks a gauge: the whole barometer, and the barometer less a sealed atmosphere, either sign."""
@@ -28,7 +31,7 @@ def marks(view: View) -> list[Mark]:
                     place=Place(gauge=gauge.tag),
                     vector=vector,
                     prior=SizePrior(least=size - doubt, most=size + max(doubt, 1.0)),
-                    share=1.0 / len(forms),
+                    share=1.0 if len(forms) == 1 else SEALED_SHARE if form == "sealed" else 1.0 - SEALED_SHARE,
                     own=(index,),
                     unit=gauge.unit.as_difference(),
                     form=form,
