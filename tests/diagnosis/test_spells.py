@@ -29,7 +29,7 @@ def timeline(readings_pa: Array, flow_m3_s: Array, width_s: float = 2.0) -> Time
     flows[:, 0] = flow_m3_s
     return Timeline(
         width_s=width_s,
-        start_s=START_S + width_s * np.arange(blocks),
+        start_s=START_S + width_s * np.arange(blocks, dtype=np.float64),
         samples=np.ones(blocks, dtype=np.int64),
         reading_pa=readings_pa,
         reading_count=np.isfinite(readings_pa).astype(np.int64),
