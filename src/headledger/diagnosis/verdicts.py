@@ -28,7 +28,7 @@ UNCHECKED_SHARE = 0.8
 SUSPECTED = 0.2
 """A gauge with a cause of its own at least this probable is never merely unchecked. [-]"""
 
-WEIGHT_JUDGED = 0.998
+WEIGHT_JUDGED = 0.99
 """Verdicts are averaged over the leading explanations that together hold this much; the rest cannot move one by more. [-]"""
 
 NODES_BY_CAUSES = {1: 32, 2: 12, 3: 6}
