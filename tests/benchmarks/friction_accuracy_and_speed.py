@@ -57,7 +57,9 @@ def main() -> None:
         {
             "haaland": lambda: (-1.8 * np.log10((roughness / 3.7) ** 1.11 + 6.9 / reynolds)) ** -2.0,
             "ours": lambda: friction_factor(reynolds, roughness),
-            "fluids": lambda: vectorized.friction_factor(Re=reynolds[some], eD=roughness[some]),
+            "fluids": lambda: vectorized.friction_factor(  # type: ignore[attr-defined]
+                Re=reynolds[some], eD=roughness[some]
+            ),
         }
     )
     print(f"largest relative difference from 40 digits: {worst_difference():.1e}")

@@ -19,6 +19,9 @@ LEFT_OUT = 0.02
 RIVAL_SHARE = 0.02
 """A rival below this part of the weight that a cause and its rivals share is not named. [-]"""
 
+NEGLIGIBLE = 1e-6
+"""Explanations less probable than this make nothing a rival. [-]"""
+
 Key = tuple[CauseKind, Place]
 
 
@@ -101,6 +104,8 @@ def _swaps(posterior: Posterior) -> dict[Key, dict[Key, float]]:
     by_rest: dict[frozenset[Key], dict[Key, float]] = defaultdict(lambda: defaultdict(float))
     whole: dict[Key, float] = defaultdict(float)
     for explanation in posterior.explanations:
+        if explanation.probability < NEGLIGIBLE:
+            break
         for key in explanation.keys:
             by_rest[explanation.keys - {key}][key] += explanation.probability
             whole[key] += explanation.probability

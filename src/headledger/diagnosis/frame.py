@@ -137,7 +137,7 @@ def all_marks(view: View, kinds: Collection[CauseKind] | None = None) -> list[Ma
     return found
 
 
-def own_frame(model: Model, shared: Frame, chosen: Sequence[int], rounds: int = 2) -> tuple[Frame, tuple[int, ...]]:
+def own_frame(model: Model, shared: Frame, chosen: Sequence[int]) -> tuple[Frame, tuple[int, ...]]:
     """The frame of one explanation, linearised at its own solution.
 
     Parameters
@@ -147,8 +147,6 @@ def own_frame(model: Model, shared: Frame, chosen: Sequence[int], rounds: int = 
         In which the explanation was found.
     chosen : sequence of int
         Its marks.
-    rounds : int
-        Linearisations; the model is near linear, so two are plenty.
 
     Returns
     -------
@@ -160,7 +158,9 @@ def own_frame(model: Model, shared: Frame, chosen: Sequence[int], rounds: int = 
     frame, index = shared, tuple(chosen)
     wanted = [(shared.marks[i].key, shared.marks[i].form) for i in chosen]
     scaled = _with_noise(model, [shared.marks[i] for i in chosen])
-    for _ in range(rounds):
+    # all is near linear but what bends the hydraulics, and that is met by a second round
+    bends = any(shared.marks[i].kind in (CauseKind.DENSITY_ERROR, CauseKind.FLOW_METER_ERROR) for i in chosen)
+    for _ in range(2 if bends else 1):
         sizes = np.array([frame.size(index, i).mean for i in index])
         vectors = np.column_stack([frame.marks[i].vector for i in index])
         points = model.moved(frame.linear, vectors @ (sizes - _applied_sizes(frame, index)))

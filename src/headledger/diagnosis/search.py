@@ -35,8 +35,8 @@ PARALLEL = 0.9999
 PAIR_NODES, TRIPLE_NODES = 12, 6
 """Quadrature nodes a sign for sets of two and three: to about 1 % in evidence, far finer than any prior is known."""
 
-OWN_SOLUTIONS = 24
-"""Leading explanations that are linearised again, each at its own solution."""
+OWN_SOLUTIONS, OWN_NATS = 24, 5.0
+"""Leading explanations, and how near the best, that are linearised again, each at its own solution. [-], [nat]"""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -284,7 +284,7 @@ def _at_own_solutions(
     shares = mark_shares(base.marks)
     out: list[Explanation] = []
     for rank, e in enumerate(ordered):
-        near = e.log_weight > ordered[0].log_weight - REACH_NATS
+        near = e.log_weight > ordered[0].log_weight - OWN_NATS
         if e.chosen and rank < OWN_SOLUTIONS and near and not (should_stop and should_stop()):
             frame, chosen = own_frame(model, base, e.chosen)
             weight = (

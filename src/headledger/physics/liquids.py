@@ -197,6 +197,7 @@ def glycol_properties(
     )
 
 
+@lru_cache(maxsize=512)
 def liquid_properties(
     *,
     kind: str,
