@@ -80,3 +80,25 @@ def test_judge_gauge_without_any_reading_is_unchecked() -> None:
     judged = judge_gauge(model, search(model), 2)
     assert judged.verdict is Verdict.UNCHECKED
     assert np.isnan(judged.outside_probability)
+
+
+def test_flow_sd_of_a_metered_line_is_its_meters_at_most() -> None:
+    """±2 % (k = 2) of 36 m³/h: 1 % standard; the losses, known to 7.5 %, cannot narrow it much and never widen it."""
+    model = worked_model(REFERENCE["sound"]["readings_kpa"])
+    linear = search(model).leading.frame.linear
+    sd = model.flow_sd_m3_s(linear, 1)
+    assert np.all(sd <= 0.01 * 0.0100001)
+    assert np.all(sd > 0.008 * 0.01)
+    assert np.all(model.flow_sd_m3_s(linear, 0) == 0.0)
+
+
+def test_search_without_a_meter_finds_the_flow_from_the_losses() -> None:
+    """The sound line with its meter taken away: 36 m³/h comes from the drops, within what ±15 % on every loss leaves."""
+    model = worked_model(REFERENCE["sound"]["readings_kpa"])
+    blind = Model(model.layout, [replace(s, flow_m3_s=np.full(3, np.nan)) for s in model.spells])
+    posterior = search(blind)
+    linear = posterior.leading.frame.linear
+    flow, sd = float(linear.states[1].flow_m3_s[0]), float(blind.flow_sd_m3_s(linear, 1)[0])
+    assert flow == pytest.approx(0.01, abs=3.0 * sd)
+    assert 0.005 * 0.01 < sd < 0.06 * 0.01
+    assert {judge_gauge(blind, posterior, g).verdict for g in range(4)} == {Verdict.PASS}

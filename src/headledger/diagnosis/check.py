@@ -143,15 +143,8 @@ def _spell(model: Model, posterior: Posterior, index: int) -> SpellFound:
     """One spell with the flow of every run under the leading explanation."""
     spell: SpellMeans = model.spells[index]
     linear = posterior.leading.frame.linear
-    state, group = linear.states[index], linear.groups[index]
-    flows = state.flow_m3_s
-    deviation = np.zeros(flows.size)
-    if state.point.flow_m3_s.size:
-        basis = state.graph.basis
-        gain = spell.flow_relative_sd * np.abs(np.nan_to_num(spell.flow_m3_s)) + spell.flow_absolute_sd_m3_s
-        own = np.where(np.isfinite(spell.flow_m3_s), gain, 0.0)[basis]
-        own = np.hypot(own, group.own_sd[state.graph.parts :])
-        deviation = np.sqrt((state.basis**2) @ own**2)
+    flows = linear.states[index].flow_m3_s
+    deviation = model.flow_sd_m3_s(linear, index)
     return SpellFound(
         id=spell.id,
         kind=spell.kind,

@@ -293,6 +293,39 @@ class Model:
         noise[metered] = self._flow_noise(spell, runs[metered])
         return noise
 
+    def flow_sd_m3_s(self, linear: Linear, index: int) -> Array:
+        """Posterior standard deviation of every run's flow in one spell, with no cause's size in doubt.
+
+        Parameters
+        ----------
+        linear : Linear
+        index : int
+            Of the spell.
+
+        Returns
+        -------
+        ndarray, shape (runs,)
+            [m³/s]
+
+        Notes
+        -----
+        An independent flow is what its meter says, moved by the meter's gain, plus a rest that the readings weigh against its prior:
+        its covariance is the rest's own plus what the shared inputs' posterior brings by both ways.
+        """
+        spell, state, group = self.spells[index], linear.states[index], linear.groups[index]
+        parts = state.graph.parts
+        if not state.point.flow_m3_s.size:
+            return np.zeros(self.layout.run_count)
+        weighted = group.own / group.noise_sd[:, None]
+        upper = np.linalg.qr(np.vstack([weighted, np.diag(1.0 / group.own_sd)]), mode="r")
+        root = np.linalg.inv(upper)
+        own = root @ root.T
+        by_shared = -own @ weighted.T @ (group.shared / group.noise_sd[:, None])
+        _, flow_marks, _ = input_marks(self.layout, self.inputs, spell, state, linear.applied)
+        by_shared = by_shared[parts:] + flow_marks[state.graph.basis]
+        covariance = own[parts:, parts:] + by_shared @ linear.white.shared_covariance() @ by_shared.T
+        return np.asarray(np.sqrt(np.maximum(np.einsum("ri,ij,rj->r", state.basis, covariance, state.basis), 0.0)))
+
     def moved(self, linear: Linear, shift: Array) -> tuple[Point, ...]:
         """The points at which the spells' own unknowns are most probable.
 
@@ -383,64 +416,3 @@ def middle_heads_m(layout: Layout, spell: SpellMeans, state: State) -> Array:
         if here.any():
             said[index] = float(np.median(estimate[here]))
     return said
-
-
-def first_points(layout: Layout, spells: Sequence[SpellMeans]) -> tuple[Point, ...]:
-    """Where to linearise first: flows as metered (balanced around loops), heads in the middle of what the gauges say.
-
-    Parameters
-    ----------
-    layout : Layout
-    spells : sequence of SpellMeans
-
-    Returns
-    -------
-    tuple of Point
-    """
-    points = []
-    for spell in spells:
-        graph = spell_graph(layout, spell)
-        flows = np.zeros(0) if spell.is_still else _first_flows(layout, spell)
-        point = Point(reference_head_m=np.zeros(graph.parts), flow_m3_s=flows)
-        state = evaluate(layout, spell, point)
-        points.append(Point(reference_head_m=middle_heads_m(layout, spell, state), flow_m3_s=flows))
-    return tuple(points)
-
-
-def _first_flows(layout: Layout, spell: SpellMeans) -> Array:
-    """Independent flows to start from: as metered; the others such that the loops close. [m³/s]"""
-    graph = spell_graph(layout, spell)
-    runs = graph.basis
-    metered = np.isfinite(spell.flow_m3_s[runs])
-    flows = np.where(metered, np.nan_to_num(spell.flow_m3_s[runs]), 0.0)
-    free = np.flatnonzero(~metered)
-    if not free.size or not graph.chords.size:
-        return flows
-    scale = FREE_VELOCITY_M_S * layout.area_m2[runs[free]]
-    flows[free] = 0.1 * scale
-    loss = _loop_residual(layout, spell, flows)
-    for _ in range(60):
-        residual, slopes = loss
-        step = np.linalg.lstsq(slopes[:, free] * scale, -residual, rcond=1e-9)[0] * scale
-        size = 1.0
-        for _ in range(12):
-            trial = flows.copy()
-            trial[free] += size * step
-            loss = _loop_residual(layout, spell, trial)
-            if (
-                np.abs(loss[0]).sum() < np.abs(residual).sum() * (1.0 - 1e-4 * size)
-                or np.abs(residual).max() < LOOP_NOISE_M
-            ):
-                break
-            size /= 2.0
-        flows = trial
-        if np.abs(loss[0]).max() < 0.01 * LOOP_NOISE_M:
-            break
-    return flows
-
-
-def _loop_residual(layout: Layout, spell: SpellMeans, flows: Array) -> tuple[Array, Array]:
-    """Head lost around each loop and its derivative with the independent flows. [m], [s/m²]"""
-    graph = spell_graph(layout, spell)
-    state = evaluate(layout, spell, Point(reference_head_m=np.zeros(graph.parts), flow_m3_s=flows))
-    return graph.loop @ state.drop_m, graph.loop @ (state.slope_s_m2[:, None] * state.basis)

@@ -14,10 +14,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from headledger.diagnosis.causes.base import View
-from headledger.diagnosis.estimate import Model, first_points
+from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.frame import Frame, all_marks, make_frame, own_frame
 from headledger.diagnosis.priors import CountPrior, mark_shares
 from headledger.diagnosis.result import CauseKind, Place
+from headledger.diagnosis.starting import first_points
 from headledger.diagnosis.state import Point
 from headledger.statistics.sizes import NODES, log_sum
 

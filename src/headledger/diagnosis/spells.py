@@ -46,6 +46,9 @@ NOTICED_FLOW_SHARE = 0.03
 SETTLING_TIME_CONSTANTS = 4.0
 """Time constants of damping after which a gauge has followed a step to 2 %. [-]"""
 
+ALIKE_TOLERANCES = 0.1
+"""How far the middle of the gauges may move against one another from one still stretch to another, in tolerances. [-]"""
+
 STILL_TOLERANCES = 1.0
 """How far the middle of the gauges may disagree with one still head, in tolerances, where no meter says. [-]"""
 
@@ -115,10 +118,10 @@ def _found(layout: Layout, timeline: Timeline, first: int, last: int) -> list[Sp
         return []
     typical = _typical_length(spans)
     trimmed = [_trimmed(layout, timeline, span) for span in spans if span[1] - span[0] >= LEAST_SHARE * typical]
+    trimmed = [(a, b) for a, b in trimmed if timeline.samples[a:b].sum() >= LEAST_SAMPLES]
     return [
-        Spell(kind=_kind(layout, timeline, a, b), first=a, last=b)
-        for a, b in trimmed
-        if timeline.samples[a:b].sum() >= LEAST_SAMPLES
+        Spell(kind=kind, first=a, last=b)
+        for (a, b), kind in zip(trimmed, _kinds(layout, timeline, trimmed), strict=True)
     ]
 
 
@@ -219,8 +222,21 @@ def _trimmed(layout: Layout, timeline: Timeline, span: tuple[int, int]) -> tuple
     return first + min(settle + piece, quarter), last - min(piece + 1, quarter)
 
 
-def _kind(layout: Layout, timeline: Timeline, first: int, last: int) -> SpellKind:
-    """Whether liquid moves in a stretch: by meters, else by pumps, else by whether the heads agree as at rest."""
+def _kinds(layout: Layout, timeline: Timeline, spans: list[tuple[int, int]]) -> list[SpellKind]:
+    """Whether liquid moves in each stretch: by meters and pumps, else by whether the heads agree as at rest."""
+    graph = layout.graph(tuple(True for _ in range(layout.run_count)))
+    by_heads = _still_by_heads(layout, timeline, spans)
+    kinds = []
+    for (first, last), still in zip(spans, by_heads, strict=True):
+        moving = _is_moving(layout, timeline, first, last)
+        if moving is None:
+            moving = graph.flow.shape[1] > 0 and not still
+        kinds.append(SpellKind.FLOWING if moving else SpellKind.STILL)
+    return kinds
+
+
+def _is_moving(layout: Layout, timeline: Timeline, first: int, last: int) -> bool | None:
+    """What meters and pump speeds say of a stretch; None where there are none."""
     metered, moving = False, False
     for run in range(layout.run_count):
         flow = timeline.flow_m3_s[first:last, run]
@@ -232,32 +248,46 @@ def _kind(layout: Layout, timeline: Timeline, first: int, last: int) -> SpellKin
         speed = timeline.speed_ratio[first:last, run]
         speed = speed[np.isfinite(speed)]
         moving |= bool(speed.size) and float(speed.mean()) > STILL_SHARE
-    if metered or moving:
-        return SpellKind.FLOWING if moving else SpellKind.STILL
-    return SpellKind.STILL if _agrees_as_still(layout, timeline, first, last) else SpellKind.FLOWING
+    return moving if metered or moving else None
 
 
-def _agrees_as_still(layout: Layout, timeline: Timeline, first: int, last: int) -> bool:
-    """Whether the gauges agree on one head as at rest, for all but a minority; also where nothing could flow."""
-    graph = layout.graph(tuple(True for _ in range(layout.run_count)))
-    if graph.flow.shape[1] == 0:
-        return True
-    density = layout.nominal_density_kg_m3
+def _still_by_heads(layout: Layout, timeline: Timeline, spans: list[tuple[int, int]]) -> list[bool]:
+    """Stretches in which the gauges agree on one head as at rest.
+
+    The stretch with the best agreement is still if most gauges agree within their tolerance; others are still where most gauges, less
+    what each was off by in that one, agree far more closely: a gauge's own error is the same at rest whatever the head.
+    """
+    single = [i for i, gauge in enumerate(layout.job.gauges) if not gauge.is_differential]
     still = layout.taps.readings_pa(
         np.zeros(len(layout.job.stations)),
         np.zeros(layout.run_count),
-        density_kg_m3=density,
+        density_kg_m3=layout.nominal_density_kg_m3,
         gravity_m_s2=layout.gravity_m_s2,
     )
-    away = []
-    with np.errstate(invalid="ignore"):
-        said = np.array([np.nanmean(c) if np.isfinite(c).any() else np.nan for c in timeline.reading_pa[first:last].T])
-    single = [i for i, g in enumerate(layout.job.gauges) if not g.is_differential and np.isfinite(said[i])]
-    if len(single) < 2:
-        return False
-    heads = said[single] - still[single]
-    middle = float(np.median(heads))
-    away = [
-        abs(h - middle) / layout.job.gauges[i].tolerance_at(float(said[i])) for h, i in zip(heads, single, strict=True)
-    ]
-    return float(np.median(away)) < STILL_TOLERANCES
+    off = np.full((len(spans), len(single)), np.nan)
+    for row, (first, last) in enumerate(spans):
+        for column, index in enumerate(single):
+            values = timeline.reading_pa[first:last, index]
+            values = values[np.isfinite(values)]
+            if values.size:
+                off[row, column] = float(values.mean()) - still[index]
+        known = off[row][np.isfinite(off[row])]
+        off[row] -= float(np.median(known)) if known.size else 0.0
+    tolerance = np.array([layout.job.gauges[i].tolerance.at(*_middle(layout, i)) for i in single])
+
+    def spread(values: Array) -> float:
+        known = np.isfinite(values)
+        return float(np.median(np.abs(values[known]) / tolerance[known])) if known.sum() >= 2 else np.inf
+
+    if not spans:
+        return []
+    best = int(np.argmin([spread(row) for row in off]))
+    if spread(off[best]) >= STILL_TOLERANCES:
+        return [False] * len(spans)
+    return [row == best or spread(off[row] - off[best]) < ALIKE_TOLERANCES for row in range(len(spans))]
+
+
+def _middle(layout: Layout, gauge: int) -> tuple[float, float, float]:
+    """Middle and ends of a gauge's range. [Pa]"""
+    noun = layout.job.gauges[gauge]
+    return (noun.range_low_pa + noun.range_high_pa) / 2.0, noun.range_low_pa, noun.range_high_pa
