@@ -68,6 +68,11 @@ def with_gauge(change: Callable[[Array], Array], gauge: int = 2) -> Array:
     return readings
 
 
+def exchanged() -> Array:
+    """Sound readings with those of PT-B and PT-D under one another's tags."""
+    return readings_pa()[:, [0, 3, 2, 1]]
+
+
 GAUGE_C = Place(gauge="PT-C")
 CASES = [
     (CauseKind.ZERO_SHIFT, GAUGE_C, with_gauge(lambda p: p + 30e3), 30e3),
@@ -75,6 +80,7 @@ CASES = [
     (CauseKind.SPAN_ERROR, GAUGE_C, with_gauge(lambda p: p * 1.08), 1.08),
     (CauseKind.WRONG_UNIT, GAUGE_C, with_gauge(lambda p: p * 6894.757293168361 / 1e5), 6894.757293168361 / 1e5),
     (CauseKind.WRONG_REFERENCE, GAUGE_C, with_gauge(lambda p: p - BAROMETER_PA), -BAROMETER_PA),
+    (CauseKind.SWAPPED, Place(gauges=("PT-B", "PT-D")), exchanged(), 0.0),
     (CauseKind.BLOCKAGE, Place(run="R2"), readings_pa(extra_loss={1: 1.5}), 1.5 * 20e3 / (RHO * 1.2732395**2 / 2.0)),
     (CauseKind.LOW_LOSS, Place(run="R2"), readings_pa(extra_loss={1: -0.8}), -0.8 * 20e3 / (RHO * 1.2732395**2 / 2.0)),
     (CauseKind.AIR_POCKET, Place(run="R1"), readings_pa(pocket_m=2.5), 2.5),
@@ -93,6 +99,9 @@ def test_search_finds_the_cause_with_which_readings_were_made(
     near = {findings[0].kind, *(r.kind for r in findings[0].rivals if r.probability > 0.2)}
     assert kind in near
     found = next(f for f in findings if (f.kind, f.place) == (kind, place))
+    if kind is CauseKind.SWAPPED:
+        assert found.accepted
+        return
     assert found.mark.reported(found.size) == pytest.approx(
         size, abs=2.5 * found.sd * abs(found.mark.size_factor) + 1e-9
     )

@@ -15,6 +15,7 @@ from headledger.diagnosis.means import SpellMeans
 from headledger.diagnosis.readings import read_timeline
 from headledger.diagnosis.result import (
     CauseFound,
+    CauseKind,
     CheckResult,
     FlowFound,
     GaugeFound,
@@ -210,8 +211,8 @@ def _cause(model: Model, finding: Finding) -> CauseFound:
     return CauseFound(
         kind=finding.kind,
         place=finding.place,
-        size=finding.mark.reported(finding.size),
-        u95=2.0 * finding.sd * abs(finding.mark.size_factor),
+        size=None if finding.kind is CauseKind.SWAPPED else finding.mark.reported(finding.size),
+        u95=None if finding.kind is CauseKind.SWAPPED else 2.0 * finding.sd * abs(finding.mark.size_factor),
         unit=finding.mark.unit,
         probability=finding.probability,
         accepted=finding.accepted,

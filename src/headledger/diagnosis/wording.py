@@ -112,6 +112,8 @@ def _statement(model: Model, finding: Finding) -> str:
         return f"{at}: its elevation is stated {amount(abs(size), unit)} {side}; it reads a column of liquid {direction} at every flow."
     if finding.kind is CauseKind.LEG_GAS and unit:
         return f"{at} reads {amount(abs(size), unit)} {direction} at every flow: gas stands in its leg."
+    if finding.kind is CauseKind.SWAPPED:
+        return f"{at} look exchanged: each logs what the other should read."
     return _pipe_statement(model, finding, at, size)
 
 
