@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from headledger.diagnosis.averages import spell_means
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.readings import Timeline
-from headledger.diagnosis.spells import find_spells
+from headledger.diagnosis.spells import find_spells, unread_spells
 from headledger.plant.job import Job, SpellKind, StatedSpell
 from headledger.statistics.series import best_cuts
 
@@ -132,3 +132,24 @@ def test_best_cuts_finds_steps_exactly() -> None:
     rng = np.random.default_rng(1)
     signal = np.concatenate([np.full(40, 0.0), np.full(25, 20.0), np.full(35, -20.0)])[:, None]
     assert best_cuts(signal + rng.normal(size=signal.shape), penalty=15.0) == [0, 40, 65, 100]
+
+
+def test_unread_spells_names_a_stated_spell_without_a_row() -> None:
+    stated = StatedSpell(start_s=START_S - 900.0, end_s=START_S - 300.0, kind=SpellKind.STILL)
+    job: Job = replace(worked_layout().job, folder=Path(), spells=(stated,))
+    spells = find_spells(Layout(job), stepped([0.0, 0.006]))
+    assert unread_spells(job, spells) == (
+        "spells: no log has a row between 2027-01-15 07:45:00 UTC and 2027-01-15 07:55:00 UTC; that spell is left out.",
+    )
+
+
+def test_find_spells_without_meter_tells_rest_from_flow_by_the_heads() -> None:
+    """At rest the gauges agree on one head but for what each is off by; under flow the losses part them."""
+    line = stepped([0.0, 0.006, 0.010])
+    rest = np.array([300e3, 380e3, 340e3, 400e3])
+    taps = worked_layout().taps.readings_pa(
+        np.full(4, 45.0), np.zeros(3), density_kg_m3=1000.0, gravity_m_s2=worked_layout().gravity_m_s2
+    )
+    readings = line.reading_pa - rest + taps
+    blind = replace(line, reading_pa=readings, flow_m3_s=np.full_like(line.flow_m3_s, np.nan))
+    assert [s.kind for s in find_spells(worked_layout(), blind)] == [SpellKind.STILL, *[SpellKind.FLOWING] * 2]

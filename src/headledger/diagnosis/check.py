@@ -25,7 +25,7 @@ from headledger.diagnosis.result import (
     Verdict,
 )
 from headledger.diagnosis.search import Posterior, search
-from headledger.diagnosis.spells import find_spells
+from headledger.diagnosis.spells import find_spells, unread_spells
 from headledger.diagnosis.verdicts import Expected, Judged, expected_readings, judge_gauge
 from headledger.diagnosis.wording import cause_sentence, verdict_sentence
 from headledger.errors import NothingToCheckError
@@ -99,7 +99,8 @@ def check_job(
     layout = Layout(job)
     timeline = read_timeline(layout, digests)
     tell("finding spells", 0.45)
-    spells = spell_means(layout, timeline, find_spells(layout, timeline))
+    stretches = find_spells(layout, timeline)
+    spells = spell_means(layout, timeline, stretches)
     if not spells:
         raise NothingToCheckError(
             f"{job.title}: the log holds no stretch in which the flow state is steady and a gauge gives a reading. "
@@ -120,7 +121,7 @@ def check_job(
         causes=tuple(_cause(model, finding) for finding in findings),
         rejects=tuple(reject for digest in digests for reject in digest.rejects),
         reject_count=sum(digest.reject_count for digest in digests),
-        remarks=(*job.remarks, *timeline.remarks),
+        remarks=(*job.remarks, *timeline.remarks, *unread_spells(job, stretches)),
     )
 
 

@@ -7,6 +7,7 @@ state to the next, is left out. A slow change of all heads together is no bar: t
 from __future__ import annotations
 
 from dataclasses import dataclass
+from datetime import UTC, datetime
 from itertools import pairwise
 
 import numpy as np
@@ -14,7 +15,7 @@ from numpy.typing import NDArray
 
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.readings import Timeline
-from headledger.plant.job import SpellKind, StatedSpell
+from headledger.plant.job import Job, SpellKind, StatedSpell
 from headledger.statistics.series import best_cuts
 
 Array = NDArray[np.float64]
@@ -92,6 +93,21 @@ def find_spells(layout: Layout, timeline: Timeline) -> tuple[Spell, ...]:
     for first, last in _free_stretches(taken):
         spells += _found(layout, timeline, first, last)
     return tuple(sorted(spells, key=lambda spell: spell.first))
+
+
+def unread_spells(job: Job, spells: tuple[Spell, ...]) -> tuple[str, ...]:
+    """Stated spells in which no log has a row, a sentence each."""
+    kept = {id(spell.stated) for spell in spells if spell.stated}
+    missing = [s for s in job.spells if s.kind is not SpellKind.IGNORE and id(s) not in kept]
+    return tuple(
+        f"spells: no log has a row between {_clock(spell.start_s)} and {_clock(spell.end_s)}; that spell is left out."
+        for spell in missing
+    )
+
+
+def _clock(time_s: float) -> str:
+    """A moment in words, UTC."""
+    return f"{datetime.fromtimestamp(time_s, UTC):%Y-%m-%d %H:%M:%S} UTC"
 
 
 def _stated(timeline: Timeline, spell: StatedSpell) -> Spell:

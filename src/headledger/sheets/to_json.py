@@ -141,7 +141,8 @@ def _cause(cause: CauseFound) -> dict[str, Any]:
     return {
         "kind": cause.kind.value,
         "at": _place(cause.place),
-        "size": _number(size),
+        # a ratio of units is exact, and rounding would put it outside its u95 of nothing
+        "size": size if u95 == 0.0 else _number(size),
         "u95": _number(u95),
         "unit": unit_text,
         "start": stamp(cause.start_s),
