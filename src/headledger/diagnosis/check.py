@@ -28,7 +28,7 @@ from headledger.diagnosis.search import Posterior, search
 from headledger.diagnosis.spells import find_spells, unread_spells
 from headledger.diagnosis.verdicts import Expected, Judged, expected_readings, judge_gauge
 from headledger.diagnosis.wording import cause_sentence, verdict_sentence
-from headledger.errors import NothingToCheckError
+from headledger.errors import JobError, NothingToCheckError, Problem
 from headledger.plant.digest import Digest
 from headledger.plant.job import Job
 from headledger.readers.job import read_job
@@ -108,7 +108,10 @@ def check_job(
         )
     tell("weighing causes", 0.5)
     model = Model(layout, spells)
-    posterior = search(model, should_stop=should_stop)
+    try:
+        posterior = search(model, should_stop=should_stop)
+    except np.linalg.LinAlgError as error:
+        raise JobError([_too_far_apart(job)]) from error
     findings = list_findings(posterior)
     tell("judging gauges", 0.85)
     judged = [judge_gauge(model, posterior, gauge) for gauge in range(layout.gauge_count)]
@@ -122,6 +125,15 @@ def check_job(
         rejects=tuple(reject for digest in digests for reject in digest.rejects),
         reject_count=sum(digest.reject_count for digest in digests),
         remarks=(*job.remarks, *timeline.remarks, *unread_spells(job, stretches)),
+    )
+
+
+def _too_far_apart(job: Job) -> Problem:
+    """The problem of numbers that no arithmetic can weigh together."""
+    return Problem(
+        place=job.title,
+        fault="its numbers lie too far apart to be weighed together",
+        expected="elevations, bores, flows, ranges and accuracies that belong to one system; look for one off by powers of ten",
     )
 
 

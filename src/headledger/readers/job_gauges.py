@@ -125,7 +125,7 @@ def _gauge(row: Row, context: GaugeContext) -> Gauge | None:
     scale = _range(row, differential=low_station is not None)
     hung_from, hung_until = _hung(row, context.zone)
     leg, signal, effect = _leg(row), _signal(row), _temperature_effect(row)
-    elevation, doubt = row.quantity("elevation"), row.positive("elevation uncertainty", zero=True)
+    elevation, doubt = row.elevation("elevation"), row.positive("elevation uncertainty", zero=True)
     corrected_to_tap, corrected_to_m = _corrected(row)
     accuracy_text = row.needed("accuracy")
     if scale is None:

@@ -75,7 +75,7 @@ def read_stations(table: Table, defaults: Defaults) -> list[tuple[Station, str]]
         row.needed("elevation")
         station = Station(
             name=row.needed("station"),
-            elevation_m=row.quantity("elevation") or 0.0,
+            elevation_m=row.elevation("elevation") or 0.0,
             elevation_sd_m=defaults.elevation_sd_m if doubt is None else doubt / COVERAGE,
             kind=StationKind(row.choice("kind", ("", "surface", "pipe")) or "pipe"),
             exchange=Exchange(row.choice("exchange", ("", "open", "closed")) or "closed"),

@@ -16,6 +16,10 @@ MOST_BYTES = 64 * 1024 * 1024
 """A table of stations or gauges is never larger than this; a larger file is some other file. [B]"""
 
 
+HIGHEST_M = 12_000.0
+"""No pipe lies higher, or deeper under a datum: what is farther off is a slip of the pen. [m]"""
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Column:
     """What a table may hold in a column.
@@ -102,6 +106,14 @@ class Row:
         unit = self.table.units.get(column)
         value = self.number_of(column)
         return None if value is None or unit is None else float(unit.to_si(value))
+
+    def elevation(self, column: str) -> float | None:
+        """An elevation, None where blank or faulty; one that no place on earth has is a fault. [m]"""
+        value = self.quantity(column)
+        if value is not None and abs(value) > HIGHEST_M:
+            self.fault(column, "is no height on earth", self.text(column), f"at most {HIGHEST_M:g} m up or down")
+            return None
+        return value
 
     def positive(self, column: str, *, zero: bool = False) -> float | None:
         """A quantity that must be positive (or zero where `zero`), None where blank or faulty."""
