@@ -86,6 +86,10 @@ def test_factors_of_units_that_pint_knows_agree_with_it(name, pint_name):
         ("ftH2Og", "ftH2O", GAUGE),
         ("ftWC", "ftH2O", None),
         ("inWC", "inH2O", None),
+        ("in WC", "inH2O", None),
+        ("mCA", "mH2O", None),
+        ("ftH2O@60F (g)", "ftH2O@60F", GAUGE),
+        ("mmH2O (20 degC)", "mmH2O@20C", None),
         ("inH2O (60 °F)", "inH2O@60F", None),
         ("inH2O @ 4 °C", "inH2O@4C", None),
         ("inH2O@60F (g)", "inH2O@60F", GAUGE),
@@ -135,6 +139,15 @@ def test_as_difference_of_a_temperature_has_no_offset():
         ("18 ° C", 291.15, Dimension.TEMPERATURE),
         ("±1 K", 1.0, Dimension.TEMPERATURE_DIFFERENCE),
         ("±1.8 °F", 1.0, Dimension.TEMPERATURE_DIFFERENCE),
+        ("±1 deg C", 1.0, Dimension.TEMPERATURE_DIFFERENCE),
+        ("18 ºC", 291.15, Dimension.TEMPERATURE),
+        ("18 ℃", 291.15, Dimension.TEMPERATURE),
+        ("64.4℉", 291.15, Dimension.TEMPERATURE),
+        ("45 μm", 45e-6, LENGTH),
+        ("1000 gpm(US)", 0.0630901964, FLOW),
+        ("1000 igpm", 4.54609 / 60.0, FLOW),
+        ("3600 lph", 1e-3, FLOW),
+        ("86.4 MLD", 1.0, FLOW),
         ("98.9 kPa", 98_900.0, PRESSURE),
         ("±5 mm", 0.005, LENGTH),
         ("+/-5mm", 0.005, LENGTH),
@@ -160,7 +173,9 @@ def test_as_difference_of_a_temperature_has_no_offset():
     ],
 )
 def test_quantity_with_its_unit_is_read_in_si(text, si, dimension):
-    """Hand checks: 18 degC = 64.4 degF = 291.15 K; 1 nautical mile = 1852 m; 1000 US gal = 3.785411784 m3."""
+    """Hand checks: 18 degC = 64.4 degF = 291.15 K; 1 nautical mile = 1852 m; 1000 US gal = 3.785411784 m3; 1000 imperial
+    gal = 4.54609 m3; 86.4 ML in 86 400 s = 1 m3/s.
+    """
     assert parse_quantity(text, dimension) == pytest.approx(si, rel=1e-9)
 
 
@@ -176,6 +191,11 @@ def test_quantity_with_its_unit_is_read_in_si(text, si, dimension):
         ("", PRESSURE, "quantity: not a unit of pressure, got '', expected a unit of pressure such as barg."),
         ("mPa", PRESSURE, "quantity: not a unit of pressure, got 'mPa', expected MPa."),
         ("Mbarg", PRESSURE, "quantity: not a unit of pressure, got 'Mbarg', expected mbarg."),
+        (
+            "MPa*s",
+            Dimension.VISCOSITY,
+            "quantity: not a unit of viscosity, got 'MPa*s', expected mPa*s.",
+        ),
         ("gmp", FLOW, "quantity: unknown unit, got 'gmp', expected gpm."),
         ("kg/s", FLOW, "quantity: this unit is no unit of flow, got 'kg/s', expected a unit of flow such as m3/h."),
         ("bar", LENGTH, "quantity: this unit is no unit of length, got 'bar', expected a unit of length such as m."),
@@ -251,6 +271,21 @@ def test_header_is_split_into_name_and_unit(header, parts):
     assert split_header(header) == parts
 
 
+@pytest.mark.parametrize(
+    ("header", "parts"),
+    [
+        ("PT-1 (psi)", ("PT-1", "psi")),
+        ("PT-1 (bar(g))", ("PT-1", "bar(g)")),
+        ("PT-1 [barg]", ("PT-1", "barg")),
+        ("PT-1", ("PT-1", None)),
+    ],
+)
+def test_header_with_round_brackets_is_split_only_where_asked(header, parts):
+    assert split_header(header, round_brackets=True) == parts
+    if "(" in header:
+        assert split_header(header) == (header, None)
+
+
 def test_nearest_names_the_likely_word_and_nothing_for_a_far_one():
     assert nearest("Accurcy", ["tag", "accuracy", "unit"]) == "accuracy"
     assert nearest("xyz", ["tag", "accuracy", "unit"]) is None
@@ -268,6 +303,22 @@ def test_format_quantity_keeps_so_many_digits_and_no_exponent():
         "1235 bar",
         "0 bar",
     ]
+
+
+@pytest.mark.parametrize(
+    ("value_pa", "resolution_pa", "text"),
+    [
+        (204_137.0, 312.0, "2.0414 bar"),
+        (204_137.0, 31_200.0, "2.04 bar"),
+        (-0.3, 31_200.0, "0.00 bar"),
+        (0.0, 312.0, "0.0000 bar"),
+        (204_137.0, 4e6, "2 bar"),
+        (204_137.0, 0.0, "2.04 bar"),
+    ],
+)
+def test_format_quantity_with_a_resolution_shows_its_first_two_digits(value_pa, resolution_pa, text):
+    """Hand check: 312 Pa is 0.0031 bar, so four decimals; 31 200 Pa is 0.31 bar, so two; 40 bar, so none."""
+    assert format_quantity(value_pa, parse_unit("bar", PRESSURE), resolution=resolution_pa) == text
 
 
 ALL_UNITS = [

@@ -90,6 +90,17 @@ STANDARD_GRAVITY = 9.80665
 ZERO_CELSIUS_K = 273.15
 ZERO_FAHRENHEIT_K = 459.67 / 1.8
 
+_WATER_INCH_PA: dict[str, float] = {
+    # an inch of water at a stated temperature (NIST SP 811, appendix B.8; 20 °C: instrument industry)
+    "4C": 249.082,
+    "39F": 249.082,
+    "39.2F": 249.082,
+    "60F": 248.84,
+    "20C": 248.641,
+    "68F": 248.641,
+}
+_INCHES: dict[str, float] = {"in": 1.0, "ft": 12.0, "mm": 1.0 / 25.4, "cm": 10.0 / 25.4, "m": 1000.0 / 25.4}
+
 _PRESSURE: dict[str, float] = {
     "Pa": 1.0,
     "hPa": 100.0,
@@ -113,22 +124,11 @@ _PRESSURE: dict[str, float] = {
     "mmH2O": STANDARD_GRAVITY,
     "inH2O": 25.4 * STANDARD_GRAVITY,
     "ftH2O": 304.8 * STANDARD_GRAVITY,
-    # columns at a stated temperature (NIST SP 811, appendix B.8; 20 °C: instrument industry)
+    # columns of mercury at a stated temperature (NIST SP 811, appendix B.8)
     "inHg@0C": 3386.38,
     "inHg@32F": 3386.38,
     "inHg@60F": 3376.85,
-    "inH2O@4C": 249.082,
-    "inH2O@39F": 249.082,
-    "inH2O@39.2F": 249.082,
-    "inH2O@60F": 248.84,
-    "inH2O@20C": 248.641,
-    "inH2O@68F": 248.641,
-    "ftH2O@4C": 2988.98,
-    "ftH2O@39F": 2988.98,
-    "ftH2O@39.2F": 2988.98,
-    "cmH2O@4C": 98.0638,
-    "mH2O@4C": 9806.38,
-    "mmH2O@4C": 9.80638,
+    **{f"{name}H2O@{at}": count * inch for name, count in _INCHES.items() for at, inch in _WATER_INCH_PA.items()},
 }
 
 PRESSURE_FACTORS: dict[str, float] = {
@@ -145,6 +145,7 @@ _PRESSURE_ALIASES: dict[str, str] = {
     "mWC": "mH2O",
     "mWS": "mH2O",
     "mCE": "mH2O",
+    "mCA": "mH2O",
     "mWG": "mH2O",
     "cmWC": "cmH2O",
     "mmWC": "mmH2O",
@@ -154,6 +155,9 @@ _PRESSURE_ALIASES: dict[str, str] = {
     "inWG": "inH2O",
     "ftWC": "ftH2O",
     "ftWG": "ftH2O",
+    "m WC": "mH2O",
+    "in WC": "inH2O",
+    "ft WC": "ftH2O",
     "mm Hg": "mmHg",
     "in Hg": "inHg",
     "m H2O": "mH2O",
@@ -191,10 +195,13 @@ _TABLES: dict[Dimension, dict[str, float]] = {
         "mL/min": 1e-6 / 60.0,
         "lps": 1e-3,
         "lpm": 1e-3 / 60.0,
+        "lph": 1e-3 / 3600.0,
         "m3/hr": 1.0 / 3600.0,
         "L/hr": 1e-3 / 3600.0,
         "gpm": US_GALLON_M3 / 60.0,
         "gpm (US)": US_GALLON_M3 / 60.0,
+        "gpm(US)": US_GALLON_M3 / 60.0,
+        "igpm": IMPERIAL_GALLON_M3 / 60.0,
         "US gpm": US_GALLON_M3 / 60.0,
         "USgpm": US_GALLON_M3 / 60.0,
         "gal/min": US_GALLON_M3 / 60.0,
@@ -207,6 +214,7 @@ _TABLES: dict[Dimension, dict[str, float]] = {
         "cfm": FOOT_M**3 / 60.0,
         "MGD": 1e6 * US_GALLON_M3 / 86400.0,
         "ML/d": 1e3 / 86400.0,
+        "MLD": 1e3 / 86400.0,
     },
     Dimension.TEMPERATURE_DIFFERENCE: {
         "K": 1.0,
@@ -223,6 +231,7 @@ _TABLES: dict[Dimension, dict[str, float]] = {
         "g/mL": 1e3,
         "kg/L": 1e3,
         "lb/ft3": 0.45359237 / FOOT_M**3,
+        "lbm/ft3": 0.45359237 / FOOT_M**3,
         "SG": 1e3,
     },
     Dimension.VISCOSITY: {
@@ -295,9 +304,22 @@ def nearest(name: str, choices: Iterable[str]) -> str | None:
     return folded[found[0]] if found else None
 
 
-def split_header(header: str) -> tuple[str, str | None]:
-    """Name and unit text of a column header such as ``elevation [m]``; the unit is None where there is none."""
+def split_header(header: str, *, round_brackets: bool = False) -> tuple[str, str | None]:
+    """Name and unit text of a column header such as ``elevation [m]``; the unit is None where there is none.
+
+    Parameters
+    ----------
+    header : str
+    round_brackets : bool
+        Whether ``PT-1 (psi)`` carries a unit too.
+
+    Returns
+    -------
+    tuple of str and (str or None)
+    """
     match = re.match(r"^\s*(?P<name>.*?)\s*\[(?P<unit>[^\]]*)\]\s*$", header)
+    if match is None and round_brackets:
+        match = re.match(r"^\s*(?P<name>.+?)\s*\((?P<unit>[^()]*(?:\([^()]*\))?)\)\s*$", header)
     return (match["name"], match["unit"].strip()) if match else (header.strip(), None)
 
 
@@ -353,15 +375,22 @@ def parse_unit(text: str, dimension: Dimension, *, default_kind: PressureKind | 
         if unit is not None:
             return unit
     else:
-        found = _look_up(tidy, _TABLES.get(dimension, {}))
+        spelt = tidy.replace(" ", "") if dimension is Dimension.TEMPERATURE_DIFFERENCE else tidy
+        found = _look_up(spelt, _TABLES.get(dimension, {}))
         if found is not None:
             return Unit(text.strip(), dimension, _TABLES[dimension][found])
     return _unit_by_pint(text, tidy, dimension, default_kind)
 
 
+_LOOK_ALIKES = str.maketrans(
+    {"³": "3", "²": "2", "·": "*", "^": None, "º": "°", "˚": "°", "℃": "°C", "℉": "°F", "μ": "µ"}
+)
+"""Signs that spreadsheets and keyboards put in place of one another, by code point."""
+
+
 def _tidy(text: str) -> str:
     """A unit's text with the spellings of powers and products made one."""
-    plain = text.translate({ord("³"): "3", ord("²"): "2", ord("·"): "*", ord("^"): None}).replace("**", "")
+    plain = text.translate(_LOOK_ALIKES).replace("**", "")
     plain = " ".join(plain.split())
     plain = re.sub(r"\b(liters?|litres?|ltr|l)(?=/|$)", "L", plain)
     return re.sub(r"\s*([/*@])\s*", r"\1", plain)
@@ -429,7 +458,12 @@ def _unit_by_pint(text: str, tidy: str, dimension: Dimension, kind: PressureKind
 
 
 def _twisted(tidy: str, dimension: Dimension) -> bool:
-    """Whether a pressure unit is one of the table but for the case of its prefix: ``mPa`` is hardly a millipascal."""
+    """Whether a unit is one of the table but for the case of its prefix: ``mPa`` is hardly a millipascal.
+
+    Litres are left alone: megalitres and millilitres are both flows of the trade.
+    """
+    if dimension is Dimension.VISCOSITY:
+        return tidy.casefold() in {name.casefold() for name in _TABLES[dimension]}
     if dimension is not Dimension.PRESSURE:
         return False
     match = _SUFFIX.match(tidy)
@@ -518,7 +552,7 @@ def split_quantity(text: str) -> tuple[float, str]:
     return parse_number(number.replace(",", ".")), match["unit"]
 
 
-def format_quantity(si_value: float, unit: Unit, digits: int = 3) -> str:
+def format_quantity(si_value: float, unit: Unit, digits: int = 3, *, resolution: float | None = None) -> str:
     """A value in a unit with so many significant digits, never in exponent form.
 
     Parameters
@@ -527,13 +561,18 @@ def format_quantity(si_value: float, unit: Unit, digits: int = 3) -> str:
         [SI]
     unit : Unit
     digits : int
+        Significant digits.
+    resolution : float, optional
+        Smallest step worth printing, such as a standard uncertainty; its first two digits set the decimals in
+        place of `digits`. [SI]
 
     Returns
     -------
     str
     """
     value = float(unit.from_si(si_value))
-    if value == 0.0 or not math.isfinite(value):
+    step, wanted = (resolution / unit.factor, 2) if resolution and math.isfinite(resolution) else (value, digits)
+    if not math.isfinite(value) or step == 0.0:
         return f"{value:g} {unit.text}"
-    places = max(0, digits - 1 - math.floor(math.log10(abs(value))))
-    return f"{value:.{places}f} {unit.text}"
+    places = max(0, wanted - 1 - math.floor(math.log10(abs(step))))
+    return f"{round(value, places) + 0.0:.{places}f} {unit.text}"
