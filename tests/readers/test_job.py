@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import tomllib
 from datetime import UTC, datetime, timedelta
 from pathlib import Path
 
@@ -16,6 +17,8 @@ from headledger.quantities import PressureKind
 from headledger.readers.job import read_job, unused_yet
 
 PSI_PA = 6894.757293168361  # NIST SP 811 (2008), appendix B.8
+UNITS = tomllib.loads((Path(__file__).parents[1] / "reference" / "units.toml").read_text(encoding="utf-8"))
+KV_OF_CV_1 = UNITS["valve"]["kv_of_cv_1"]
 
 
 def gauge(folder, extra_header: str, extra_cells: str, *, unit: str = "barg"):
@@ -123,14 +126,14 @@ def test_hazen_williams_beside_another_liquid_than_water_is_warned_of(job_folder
     [
         ("Kv [m3/h]", "36", 0.01),
         ("Kv [L/min]", "600", 0.01),
-        # 1 US gallon a minute at 1 psi: 0.003785411784 m3 / 60 s * sqrt(1e5 / 6894.757293168361)
+        ("Cv", "100", 100 * KV_OF_CV_1["value"] / 3600.0),
+        # The same from its definition, 1 US gallon a minute at 1 psi: flow goes with the root of the drop.
         ("Cv", "100", 100 * 0.003785411784 / 60 * math.sqrt(1e5 / PSI_PA)),
     ],
 )
 def test_valve_is_kept_as_the_flow_that_loses_one_bar(job_folder, header, cell, kv_m3_s):
-    # The printed ratio Kv/Cv is that of water of 1000 kg/m3 against water of 60 degF (999.016 kg/m3): 5e-4 apart at most.
     found = run(job_folder, f"bore [mm],{header}", f"100,{cell}").valve_kv_m3_s
-    assert found == pytest.approx(kv_m3_s, rel=6e-4 if header == "Cv" else 1e-12)
+    assert found == pytest.approx(kv_m3_s, rel=KV_OF_CV_1["relative"])
 
 
 def test_rated_drop_and_flow_are_read_as_differences(job_folder):
