@@ -26,6 +26,10 @@ ACCURACIES = "class 1.6, grade 2A, 0.25 % span, 0.5 % reading, ±0.02 bar, or a 
          "stations.csv, row 1, kind: this column stands twice, got kind, expected one column of this name."),
         (STATIONS, "elevation [m]", "elevation",
          "stations.csv, row 1, elevation: the unit is missing, got elevation, expected elevation [m]."),
+        (STATIONS, "elevation [m]", "elevation (m)",
+         "stations.csv, row 1: a unit stands in square brackets, got elevation (m), expected elevation [m]."),
+        (GAUGES, "tag,station,", "tag,station (old),",
+         "gauges.csv, row 1: unknown column, got station (old), expected station."),
         (STATIONS, "elevation [m]", "elevation [bar]",
          "stations.csv, row 1, elevation: this unit is no unit of length, got 'bar', "
          "expected a unit of length such as m."),
@@ -141,6 +145,8 @@ ACCURACIES = "class 1.6, grade 2A, 0.25 % span, 0.5 % reading, ±0.02 bar, or a 
         (TOML, '"98.9 kPa"', '"98.9 kPag"',
          "job.toml, [site] barometer: of the wrong kind, gauge and not absolute, got '98.9 kPag', "
          "expected 98.9 kPaa."),
+        (TOML, '"98.9 kPa"', '{ column = "BARO", unit = "kPag" }',
+         "job.toml, [site] barometer: must be an absolute pressure, got kPag, expected kPaa."),
         (TOML, '"47 deg"', '"147 deg"',
          "job.toml, [site] latitude: is no latitude, got 147 deg, expected -90 to 90 deg."),
         (TOML, '"1 % span"', '"1 % spam"',
@@ -188,6 +194,9 @@ def test_one_fault_is_said_once_with_place_finding_and_cure(job_folder, name, ol
         (RUNS, "R1,S1,S2,40,100", "R1,S1,S2,40,-100"),
         (TOML, '"1 % span"', '"1 % spam"'),
         (TOML, '"98.9 kPa"', '"98.9 kPag"'),
+        (TOML, '"98.9 kPa"', '{ column = "BARO", unit = "kPag" }'),
+        (TOML, '"18 degC"', '{ colum = "TT-1" }'),
+        (STATIONS, "elevation [m]", "elevation (m)"),
     ],
 )
 def test_one_fault_brings_no_others_with_it(job_folder, name, old, new):

@@ -100,7 +100,9 @@ def unused_yet(job: Job) -> tuple[str, ...]:
     if any(run.temperature_k is not None or run.temperature_column for run in job.runs):
         remarks.append("runs: temperatures of their own are not used yet; the job's liquid temperature stands.")
     if job.site.barometer_column:
-        remarks.append("barometer: its log column is not used yet; the standard atmosphere stands in.")
+        remarks.append(
+            "barometer: its log column is not used yet; the standard atmosphere stands in, with its own doubt."
+        )
     if any(run.rating_pa is not None for run in job.runs):
         remarks.append("runs: ratings are not used yet; they limit a pressure hold.")
     if job.hold:

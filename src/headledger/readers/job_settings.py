@@ -125,11 +125,20 @@ class Section:
             return None
         return value
 
-    def column(self, key: str, dimension: Dimension) -> tuple[str, Unit] | None:
-        """A log column that measures this, where the key is a table ``{ column, unit }``."""
+    def measured(
+        self, key: str, dimension: Dimension, example: str, kind: PressureKind | None = None
+    ) -> tuple[tuple[str, Unit] | None, float | None]:
+        """The log column that measures this where the key is a table ``{ column, unit }``, else its value above zero in SI.
+
+        One of them at most; neither where it is not given or faulty.
+        """
         value = self.values.get(key)
-        if not isinstance(value, dict):
-            return None
+        if isinstance(value, dict):
+            return self._column(key, value, dimension), None
+        return None, self.positive(key, dimension, example, kind)
+
+    def _column(self, key: str, value: dict[str, Any], dimension: Dimension) -> tuple[str, Unit] | None:
+        """Name and unit of a log column, None where faulty."""
         name, unit_text = value.get("column"), value.get("unit")
         if not (isinstance(name, str) and isinstance(unit_text, str)) or set(value) - {"column", "unit"}:
             self.fault(key, "must name a column and its unit", str(value), f'{key} = {{ column = "…", unit = "…" }}')
@@ -222,8 +231,7 @@ def read_liquid(section: Section) -> LiquidSpec:
     if kind not in kinds:
         section.fault("kind", "unknown liquid", kind, _did_you_mean(kind, tuple(kinds)))
         kind = "water"
-    column = section.column("temperature", Dimension.TEMPERATURE)
-    stated = None if column else section.positive("temperature", Dimension.TEMPERATURE, "18 degC")
+    column, stated = section.measured("temperature", Dimension.TEMPERATURE, "18 degC")
     doubt = section.quantity("temperature_uncertainty", Dimension.TEMPERATURE_DIFFERENCE, "±1 K")
     if doubt is None:
         doubt = KELVIN_UNSTATED if stated is None and column is None else 1.0
@@ -301,11 +309,13 @@ def _concentration(section: Section, kind: str) -> tuple[float | None, bool]:
 
 def read_site(section: Section) -> Site:
     """Where a job stands."""
-    column = section.column("barometer", Dimension.PRESSURE)
-    barometer = None if column else section.positive("barometer", Dimension.PRESSURE, "98.9 kPa", PressureKind.ABSOLUTE)
+    column, barometer = section.measured("barometer", Dimension.PRESSURE, "98.9 kPa", PressureKind.ABSOLUTE)
     doubt = section.quantity("barometer_uncertainty", Dimension.PRESSURE, "±0.2 kPa", PressureKind.DIFFERENCE)
     if doubt is None:
-        doubt = BAROMETER_UNSTATED_PA if barometer is None and column is None else BAROMETER_STATED_PA
+        doubt = BAROMETER_UNSTATED_PA if barometer is None else BAROMETER_STATED_PA
+    elif column:
+        # The column has no part in the judgement: what is doubted is the standard atmosphere that stands in for it.
+        doubt = max(abs(doubt), BAROMETER_UNSTATED_PA)
     altitude = section.quantity("datum_altitude", Dimension.LENGTH, "210 m")
     latitude = section.quantity("latitude", Dimension.ANGLE, "47 deg")
     if latitude is not None and abs(latitude) > 90.0:

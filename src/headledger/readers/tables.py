@@ -290,10 +290,16 @@ def _match_headers(table: Table, number: int, header: Sequence[str], columns: Ma
     names: list[str] = []
     for text in header:
         name, unit = split_header(text)
-        known = by_folded.get(" ".join(name.casefold().split()), "")
+        known = by_folded.get(_folded(name), "")
         if name and not known:
-            expected = nearest(name, columns) or "one of " + ", ".join(columns)
-            table.problems.add(place, "unknown column", name, expected)
+            bare, loose = split_header(text, round_brackets=True)
+            meant = by_folded.get(_folded(bare), "")
+            if unit is None and loose is not None and meant and columns[meant].dimension:
+                table.problems.add(place, "a unit stands in square brackets", text.strip(), f"{bare} [{loose}]")
+                known, unit = meant, loose
+            else:
+                expected = nearest(name, columns) or "one of " + ", ".join(columns)
+                table.problems.add(place, "unknown column", name, expected)
         if known and known in names:
             table.problems.add(f"{place}, {known}", "this column stands twice", text.strip(), "one column of this name")
             known = ""
@@ -306,6 +312,11 @@ def _match_headers(table: Table, number: int, header: Sequence[str], columns: Ma
             table.problems.add(place, "a required column is missing", "", f"a column {example}")
     table.columns = tuple(name for name in names if name)
     return names
+
+
+def _folded(name: str) -> str:
+    """A column's name without what case and spaces say."""
+    return " ".join(name.casefold().split())
 
 
 _EXAMPLE_UNITS: dict[Dimension, str] = {
