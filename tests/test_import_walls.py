@@ -11,7 +11,7 @@ import pytest
 
 SOURCE = Path(__file__).parents[1] / "src" / "headledger"
 HEAVY = frozenset(
-    {"numpy", "scipy", "pandas", "pint", "pydantic", "rich", "textual", "textual_plot", "reportlab", "python_calamine"}
+    {"numpy", "scipy", "pandas", "pint", "rich", "textual", "textual_plot", "reportlab", "python_calamine"}
 )
 # Who may import what, by the first folder or module under the package.
 OWNERS = {
@@ -22,7 +22,6 @@ OWNERS = {
     "pint": {"quantities"},
     "reportlab": {"sheets"},
     "click": {"cli"},
-    "pydantic": {"readers"},
 }
 SCIPY_PARTS = {"special", "linalg", "sparse"}
 CORE = ("quantities", "physics", "statistics", "plant", "diagnosis")
@@ -93,7 +92,7 @@ def test_first_screen_loads_no_numbers():
     """The screen stands before the check's libraries are read."""
     loaded = modules_after("import headledger.tui.app")
     assert "textual" in loaded
-    assert not loaded & {"numpy", "scipy", "pandas", "pint", "pydantic", "reportlab"}
+    assert not loaded & {"numpy", "scipy", "pandas", "pint", "reportlab"}
 
 
 def test_json_of_a_result_loads_no_screen():
