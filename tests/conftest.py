@@ -19,7 +19,7 @@ def pytest_configure() -> None:
     pytest.MonkeyPatch().setattr(textual.constants, "TEXTUAL_ANIMATIONS", "none")
     for name in ("NO_COLOR", "FORCE_COLOR", "TEXTUAL_THEME", "HEADLEDGER_TRACEBACK", "COLUMNS", "LINES"):
         os.environ.pop(name, None)
-    hypothesis.settings.register_profile("house", deadline=None, max_examples=60)
+    hypothesis.settings.register_profile("house", deadline=None, max_examples=60, derandomize=True)
     hypothesis.settings.load_profile("house")
 
 

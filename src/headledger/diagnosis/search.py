@@ -124,7 +124,8 @@ def search(
     prior = prior or CountPrior()
     stay = points is not None
     frame = shared_frame(model, points if points is not None else first_points(model.layout, model.spells), kinds)
-    weighed = _weigh(frame, prior, should_stop)
+    # sets of two are enough to see where to linearise
+    weighed = _weigh(frame, prior if stay else CountPrior(of=prior.of[:3]), should_stop)
     if not stay:
         best = max(weighed, key=lambda chosen: weighed[chosen])
         frame = shared_frame(model, _solution(model, frame, best), kinds)
