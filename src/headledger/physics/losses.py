@@ -5,14 +5,14 @@ Every loss gives its value and its exact derivative, is odd in the flow and smoo
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 from math import pi
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from headledger.physics.friction import hazen_williams_resistance, head_of_factor_m, head_of_resistance_m
+from headledger.physics.friction import HAZEN_WILLIAMS_FACTOR, friction_factor_and_slope
 
 Array = NDArray[np.float64]
 
@@ -25,6 +25,15 @@ ENTRANCE_SHARP_K, EXIT_K = 0.5, 1.0
 KV_PRESSURE_PA, KV_DENSITY_KG_M3 = 1e5, 1000.0
 """The drop and the density at which a Kv is stated (IEC 60534, from memory). [Pa], [kg/m³]"""
 
+FLOW_EXPONENT = 1.0 / 0.54
+"""Exponent of flow in Hazen–Williams. [-]"""
+
+BORE_EXPONENT = 2.63 / 0.54
+"""Exponent of bore in Hazen–Williams. [-]"""
+
+SMALLEST_REYNOLDS = 1e-9
+"""Below this the laminar law is taken at its limit, so that no flow is divided by. [-]"""
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class RunLoss:
@@ -35,9 +44,9 @@ class RunLoss:
     bore_m, length_m : float
         [m]
     roughness_m : float or None
-        For Darcy–Weisbach with Colebrook–White; a smooth pipe where neither this nor the next is given. [m]
+        Darcy–Weisbach with Colebrook–White where given. [m]
     hazen_williams_c : float or None
-        Hazen–Williams, and no Darcy–Weisbach, where given. [-]
+        Hazen–Williams where given. [-]
     fittings_k : float
         Sum of loss coefficients on the bore's velocity head. [-]
     valve_kv_m3_s : float or None
@@ -57,40 +66,41 @@ class RunLoss:
 
 
 class LossTable:
-    """Losses of many runs, evaluated together.
+    """Losses of many runs with one liquid, evaluated together.
 
     Parameters
     ----------
     runs : sequence of RunLoss
-    density_kg_m3, viscosity_pa_s : array_like
-        Of the liquid: one for all, or one for each run. [kg/m³], [Pa s]
-    gravity_m_s2 : float
-        [m/s²]
+    density_kg_m3, viscosity_pa_s, gravity_m_s2 : float
+        [kg/m³], [Pa s], [m/s²]
     """
 
     def __init__(
-        self, runs: Sequence[RunLoss], *, density_kg_m3: ArrayLike, viscosity_pa_s: ArrayLike, gravity_m_s2: float
+        self, runs: Sequence[RunLoss], *, density_kg_m3: float, viscosity_pa_s: float, gravity_m_s2: float
     ) -> None:
-        bore, length = _column(run.bore_m for run in runs), _column(run.length_m for run in runs)
+        bore = np.array([run.bore_m for run in runs])
+        length = np.array([run.length_m for run in runs])
         area = pi * bore**2 / 4.0
         per_square = 1.0 / (2.0 * gravity_m_s2 * area**2)
-        williams = np.array([bool(run.hazen_williams_c) for run in runs])
-        density = np.asarray(density_kg_m3, dtype=float)
-        self._reynolds = density / (np.asarray(viscosity_pa_s) * area) * bore
-        self._roughness = _column(run.roughness_m or 0.0 for run in runs) / bore
-        self._pipe = np.where(williams, 0.0, length / bore * per_square)
-        coefficient = _column(run.hazen_williams_c or 1.0 for run in runs)
-        self._resistance = np.where(williams, hazen_williams_resistance(length, bore, coefficient), 0.0)
-        self._any_williams = bool(williams.any())
-        rated = [
-            run.rated_drop_pa and run.rated_flow_m3_s and run.rated_drop_pa / run.rated_flow_m3_s**2 for run in runs
-        ]
-        self._square = (
-            _column(run.fittings_k for run in runs) * per_square
-            + _column(run.valve_kv_m3_s and run.valve_kv_m3_s**-2 for run in runs)
-            * (KV_PRESSURE_PA / (KV_DENSITY_KG_M3 * gravity_m_s2))
-            + _column(rated) / (density * gravity_m_s2)
+        williams = np.array([run.hazen_williams_c or np.nan for run in runs])
+        by_williams = np.isfinite(williams)
+        self._reynolds = density_kg_m3 / (viscosity_pa_s * area) * bore
+        self._roughness = np.array([(run.roughness_m or 0.0) for run in runs]) / bore
+        self._pipe = np.where(by_williams, 0.0, length / bore * per_square)
+        self._williams = np.where(
+            by_williams,
+            HAZEN_WILLIAMS_FACTOR
+            * length
+            / np.where(by_williams, williams, 1.0) ** FLOW_EXPONENT
+            / bore**BORE_EXPONENT,
+            0.0,
         )
+        self._square = np.array([run.fittings_k for run in runs]) * per_square
+        for index, run in enumerate(runs):
+            if run.valve_kv_m3_s:
+                self._square[index] += KV_PRESSURE_PA / (KV_DENSITY_KG_M3 * gravity_m_s2 * run.valve_kv_m3_s**2)
+            if run.rated_drop_pa and run.rated_flow_m3_s:
+                self._square[index] += run.rated_drop_pa / (density_kg_m3 * gravity_m_s2 * run.rated_flow_m3_s**2)
 
     def evaluate(self, flow_m3_s: ArrayLike) -> tuple[Array, Array]:
         """Head lost in every run and its derivative.
@@ -107,33 +117,25 @@ class LossTable:
 
         Notes
         -----
-        Pipe by Darcy–Weisbach or Hazen–Williams, plus ``K v²/2g`` of fittings, ``(Q/Kv)² 1 bar / (1000 kg/m³ g)`` of a valve, and
-        ``Δp (Q/Q_rated)² / (ρ g)`` of equipment; each with the sign of the flow. A valve's drop goes with the liquid's density, so
-        its head does not.
+        Darcy–Weisbach ``h = f L/D v²/2g`` or Hazen–Williams ``h = k L (Q/C)^1.852 / D^4.870``, plus ``K v²/2g``, plus valve and
+        equipment with the square of flow.
 
         References
         ----------
-        `darcy_weisbach_head_m` and `hazen_williams_head_m`; Crane, Technical Paper 410, Flow of Fluids, K of fittings; IEC 60534-2-1,
-        Kv of incompressible flow (from memory).
+        G. S. Williams and A. Hazen, Hydraulic Tables (1905), in SI by V = 0.849 C R^0.63 S^0.54.
         """
         flow = np.asarray(flow_m3_s, dtype=float)
-        head, slope = head_of_factor_m(
-            flow,
-            head_per_square_s2_m5=self._pipe,
-            reynolds_per_flow_s_m3=self._reynolds,
-            relative_roughness=self._roughness,
-        )
-        squared = self._square * np.abs(flow)
-        head, slope = head + flow * squared, slope + 2.0 * squared
-        if self._any_williams:
-            extra_head, extra_slope = head_of_resistance_m(flow, self._resistance)
-            head, slope = head + extra_head, slope + extra_slope
-        return head, slope
-
-
-def _column(values: Iterable[float | None]) -> Array:
-    """One value a run, nothing where none was given."""
-    return np.array([value or 0.0 for value in values])
+        size = np.abs(flow)
+        reynolds = np.maximum(self._reynolds * size, SMALLEST_REYNOLDS)
+        factor, log_slope = friction_factor_and_slope(reynolds, np.broadcast_to(self._roughness, reynolds.shape))
+        # f Q stays finite as the flow goes to nothing: f falls as 1/Q there
+        linear = self._pipe * factor * (reynolds / self._reynolds)
+        head = flow * (linear + self._square * size)
+        slope = linear * (2.0 + log_slope) + 2.0 * self._square * size
+        power = size ** (FLOW_EXPONENT - 1.0)
+        head = head + self._williams * flow * power
+        slope = slope + self._williams * FLOW_EXPONENT * power
+        return np.asarray(head), np.asarray(slope)
 
 
 def head_loss(
@@ -175,7 +177,7 @@ def widening_k(bore_ratio: float) -> float:
 
     References
     ----------
-    Borda–Carnot, ``K = (1 − β²)²``: F. M. White, Fluid Mechanics, chapter 6, minor losses, sudden expansion.
+    Borda–Carnot: ``(1 − β²)²``.
     """
     return (1.0 - bore_ratio**2) ** 2
 
@@ -190,7 +192,7 @@ def narrowing_k(bore_ratio: float) -> float:
 
     References
     ----------
-    Crane, Technical Paper 410, Flow of Fluids, ``K = 0.5 (1 − β²)`` for a sudden contraction.
+    Crane TP-410: ``0.5 (1 − β²)``.
     """
     return 0.5 * (1.0 - bore_ratio**2)
 
@@ -235,11 +237,7 @@ def pump_head(coefficients: Sequence[float], flow_m3_s: float, speed_ratio: floa
 
     Notes
     -----
-    Affinity laws, ``H(Q, n) = n² H(Q/n, 1) = a n² + b n Q + c Q²``.
-
-    References
-    ----------
-    F. M. White, Fluid Mechanics, chapter 11, similarity rules of pumps.
+    ``H(Q, n) = n² H(Q/n, 1) = a n² + b n Q + c Q²``.
     """
     if speed_ratio <= 0.0:
         return 0.0, 0.0
