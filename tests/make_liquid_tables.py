@@ -87,8 +87,8 @@ def glycol(name: str) -> dict[str, Any]:
         return float(cp.PropsSI(quantity, "T", temperature_k, "P", 1e6, f"INCOMP::{name}[{max(fraction, 1e-4)}]"))
 
     freezing = [
-        float(cp.PropsSI("T_freeze", "T", 293.15, "P", 1e6, f"INCOMP::{name}[{max(x, 1e-4)}]"))
-        for x in np.linspace(least, most, 13)
+        round(float(cp.PropsSI("T_freeze", "T", 293.15, "P", 1e6, f"INCOMP::{name}[{max(x, 1e-4)}]")), 3)
+        for x in np.linspace(least, most, 61)
     ]
     return {
         "fractions": list(fractions),

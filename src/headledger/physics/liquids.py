@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
@@ -85,7 +86,8 @@ def water_properties(temperature_k: float) -> LiquidProperties:
 
     References
     ----------
-    IAPWS R6-95(2018) for density, saturation and compressibility; IAPWS R12-08 for viscosity.
+    IAPWS R6-95(2018), Revised Release on the IAPWS Formulation 1995, for density, saturation and compressibility; IAPWS R12-08,
+    Release on the IAPWS Formulation 2008 for the Viscosity of Ordinary Water Substance.
     """
     table = _tables()["water"]
     low, high = table["range_k"]
@@ -103,6 +105,36 @@ def water_properties(temperature_k: float) -> LiquidProperties:
         vapour_pressure_pa=float(np.exp(value("log_vapour_pressure"))),
         bulk_modulus_pa=float(np.exp(value("log_bulk_modulus"))),
     )
+
+
+def water_vapour_pressure_pa(temperature_k: float) -> float:
+    """Vapour pressure of water that is still liquid, below 0 °C as well, where it is part of a glycol mixture.
+
+    Parameters
+    ----------
+    temperature_k : float
+        Up to 180 °C. [K]
+
+    Returns
+    -------
+    float
+        [Pa absolute]
+
+    Notes
+    -----
+    Below the table ``ln p`` goes on in a straight line over ``1/T``, value and slope joined (Clausius–Clapeyron with the heat of
+    evaporation at 0 °C); 1.5 % high at −20 °C.
+
+    References
+    ----------
+    Supercooled water, for that figure: D. M. Murphy and T. Koop, Q. J. R. Meteorol. Soc. 131 (2005) 1539-1565, equation 10 (from memory).
+    """
+    table = _tables()["water"]
+    low, high = table["range_k"]
+    if temperature_k >= low:
+        return water_properties(temperature_k).vapour_pressure_pa
+    slope = float(chebyshev.chebval(-1.0, chebyshev.chebder(table["log_vapour_pressure"]))) * 2.0 / (high - low)
+    return water_properties(low).vapour_pressure_pa * math.exp(slope * low**2 * (1.0 / low - 1.0 / temperature_k))
 
 
 def seawater_properties(temperature_k: float, salinity_g_kg: float) -> LiquidProperties:
@@ -127,8 +159,9 @@ def seawater_properties(temperature_k: float, salinity_g_kg: float) -> LiquidPro
 
     References
     ----------
-    IOC, SCOR and IAPSO (2010), TEOS-10, for density; Sharqawy, Lienhard & Zubair (2010) for viscosity. Vapour pressure: water's
-    less 0.537 parts per thousand for each g/kg (Raoult's law for sea salt).
+    IOC, SCOR and IAPSO (2010), The international thermodynamic equation of seawater, TEOS-10, for density; M. H. Sharqawy, J. H.
+    Lienhard and S. M. Zubair, Thermophysical properties of seawater, Desalin. Water Treat. 16 (2010) 354-380, for viscosity. Vapour
+    pressure: water's less 0.537 parts per thousand for each g/kg (Raoult's law for sea salt, from memory).
     """
     table = _tables()["seawater"]
     _demand("temperature", temperature_k, table["range_k"], "°C", 273.15)
@@ -171,19 +204,12 @@ def glycol_properties(
 
     References
     ----------
-    Melinder (2010), Properties of Secondary Working Fluids, by mass; ASHRAE Handbook Fundamentals (2001) by volume; both as CoolProp
-    has them.
+    Å. Melinder, Properties of Secondary Working Fluids for Indirect Systems, IIR (2010), by mass; ASHRAE Handbook Fundamentals
+    (2001), by volume; both as CoolProp has them. Raoult's law for the vapour pressure.
     """
     table = _tables()[(BY_VOLUME if by_volume else BY_MASS)[kind]]
-    least, most = table["fractions"]
-    _demand("concentration", 100.0 * concentration_fraction, (100.0 * least, 100.0 * most), "%")
-    freezing = float(
-        np.interp(concentration_fraction, np.linspace(least, most, len(table["freezing_k"])), table["freezing_k"])
-    )
-    coldest, hottest = table["range_k"]
-    _demand("temperature", temperature_k, (max(freezing, coldest), hottest), "°C", 273.15)
+    _demand("temperature", temperature_k, _glycol_limits_k(table, concentration_fraction), "°C", 273.15)
     x, y = _scaled(concentration_fraction, table["fractions"]), _scaled(temperature_k, table["range_k"])
-    water = water_properties(max(temperature_k, 273.16))
     mass = concentration_fraction
     if by_volume:
         pure = GLYCOL_DENSITY_KG_M3[kind] * concentration_fraction
@@ -192,9 +218,66 @@ def glycol_properties(
     return LiquidProperties(
         density_kg_m3=float(chebyshev.chebval2d(x, y, np.array(table["density"]))),
         viscosity_pa_s=float(np.exp(chebyshev.chebval2d(x, y, np.array(table["log_viscosity"])))),
-        vapour_pressure_pa=water.vapour_pressure_pa * moles / (moles + mass / GLYCOL_MOLAR_MASS[kind]),
-        bulk_modulus_pa=water.bulk_modulus_pa,
+        vapour_pressure_pa=water_vapour_pressure_pa(temperature_k) * moles / (moles + mass / GLYCOL_MOLAR_MASS[kind]),
+        bulk_modulus_pa=water_properties(max(temperature_k, 273.16)).bulk_modulus_pa,
     )
+
+
+def _glycol_limits_k(table: dict[str, Any], concentration_fraction: float) -> tuple[float, float]:
+    """Freezing point, or the table's coldest where that is warmer, and the table's hottest; refuses a foreign concentration. [K]"""
+    least, most = table["fractions"]
+    _demand("concentration", 100.0 * concentration_fraction, (100.0 * least, 100.0 * most), "%")
+    freezing = np.interp(
+        concentration_fraction, np.linspace(least, most, len(table["freezing_k"])), table["freezing_k"]
+    )
+    coldest, hottest = table["range_k"]
+    return max(float(freezing), coldest), hottest
+
+
+def temperature_limits_k(
+    *, kind: str, concentration_fraction: float | None = None, by_volume: bool = False
+) -> tuple[float, float]:
+    """Coldest and hottest temperature at which `liquid_properties` knows a liquid, so that a difference can stay within.
+
+    Parameters
+    ----------
+    kind : str
+        As in `liquid_properties`.
+    concentration_fraction : float, optional
+        Of a glycol. [-]
+    by_volume : bool
+
+    Returns
+    -------
+    tuple of float
+        Unlimited for ``other``. [K]
+
+    Raises
+    ------
+    QuantityError
+        Unknown kind, or a concentration outside the table.
+    """
+    if kind in BY_MASS:
+        table = _tables()[(BY_VOLUME if by_volume else BY_MASS)[kind]]
+        return _glycol_limits_k(table, _demand_concentration(concentration_fraction))
+    if kind in ("water", "seawater"):
+        coldest, hottest = _tables()[kind]["range_k"]
+        return coldest, hottest
+    _demand_other(kind)
+    return 0.0, math.inf
+
+
+def _demand_concentration(concentration_fraction: float | None) -> float:
+    """Refuse a glycol that does not say how much of it there is."""
+    if concentration_fraction is None:
+        raise QuantityError("concentration is missing for a glycol", "", 'concentration = "30 %"')
+    return concentration_fraction
+
+
+def _demand_other(kind: str) -> None:
+    """Refuse a kind that no table knows, unless it brings its own values."""
+    if kind != "other":
+        raise QuantityError("unknown liquid", kind, "water, seawater, ethylene-glycol, propylene-glycol or other")
 
 
 @lru_cache(maxsize=512)
@@ -232,16 +315,16 @@ def liquid_properties(
     Raises
     ------
     QuantityError
-        Unknown kind, or a value outside the table.
+        Unknown kind, a value outside the table, or a concentration or density missing where the kind needs it.
     """
     if kind == "water":
         return water_properties(temperature_k)
     if kind == "seawater":
         return seawater_properties(temperature_k, 35.0 if salinity_g_kg is None else salinity_g_kg)
     if kind in BY_MASS:
-        return glycol_properties(kind, temperature_k, concentration_fraction or 0.0, by_volume=by_volume)
-    if kind != "other":
-        raise QuantityError("unknown liquid", kind, "water, seawater, ethylene-glycol, propylene-glycol or other")
+        fraction = _demand_concentration(concentration_fraction)
+        return glycol_properties(kind, temperature_k, fraction, by_volume=by_volume)
+    _demand_other(kind)
     if density_kg_m3 is None:
         raise QuantityError("a liquid of kind other needs its density", "", 'density = "870 kg/m3"')
     water = water_properties(min(max(temperature_k, 273.16), 453.15))
