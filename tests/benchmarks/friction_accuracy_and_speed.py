@@ -47,6 +47,17 @@ def best_seconds(calls: dict[str, Callable[[], object]]) -> dict[str, float]:
     return best
 
 
+def haaland_in_place(reynolds: Array, relative_roughness: Array) -> Array:
+    """One Haaland evaluation as lean as numpy allows: no temporary that is not needed, no second power."""
+    factor = relative_roughness / 3.7
+    np.power(factor, 1.11, out=factor)
+    factor += 6.9 / reynolds
+    np.log10(factor, out=factor)
+    factor *= -1.8
+    factor *= factor
+    return np.divide(1.0, factor, out=factor)
+
+
 def main() -> None:
     """Print the figures."""
     rng = np.random.default_rng(0)
@@ -56,6 +67,7 @@ def main() -> None:
     best = best_seconds(
         {
             "haaland": lambda: (-1.8 * np.log10((roughness / 3.7) ** 1.11 + 6.9 / reynolds)) ** -2.0,
+            "haaland in place": lambda: haaland_in_place(reynolds, roughness),
             "ours": lambda: friction_factor(reynolds, roughness),
             "fluids": lambda: vectorized.friction_factor(  # type: ignore[attr-defined]
                 Re=reynolds[some], eD=roughness[some]
@@ -64,7 +76,8 @@ def main() -> None:
     )
     print(f"largest relative difference from 40 digits: {worst_difference():.1e}")
     print(
-        f"{VALUES} values: {1e3 * best['ours']:.1f} ms, {best['ours'] / best['haaland']:.2f} × one Haaland evaluation"
+        f"{VALUES} values: {1e3 * best['ours']:.1f} ms, {best['ours'] / best['haaland']:.2f} × one Haaland evaluation, "
+        f"{best['ours'] / best['haaland in place']:.2f} × one written in place"
     )
     whole = 20.0 * best["fluids"]
     print(
