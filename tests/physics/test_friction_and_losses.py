@@ -129,6 +129,13 @@ def test_head_loss_hazen_williams_agrees_with_the_form_of_fire_protection() -> N
     assert head * case["density_kg_m3"] * G / psi == pytest.approx(case["psi_per_foot"], rel=case["tolerance"])
 
 
+def test_head_loss_hazen_williams_agrees_with_the_metric_form_of_fire_protection() -> None:
+    case = REFERENCE["hazen_williams_fire_metric"]
+    run = RunLoss(bore_m=0.15405, length_m=1.0, hazen_williams_c=120.0)
+    head, _ = head_loss(run, 1.893 / 60.0, **WATER)
+    assert head * case["density_kg_m3"] * G / 1e5 == pytest.approx(case["bar_per_metre"], rel=case["tolerance"])
+
+
 def test_head_loss_at_rest_has_the_laminar_slope() -> None:
     """Hagen–Poiseuille: dh/dQ = 128 ν L/(π g D⁴), for water at 20 °C in 50 m of 20 mm."""
     head, slope = head_loss(RunLoss(bore_m=0.02, length_m=50.0, roughness_m=1e-5), np.zeros(2), **WATER)
