@@ -243,6 +243,17 @@ def test_pump_curve_passes_through_three_pairs_and_follows_the_affinity_laws() -
     assert pump_head(curve, 0.01, 0.0) == (0.0, 0.0)
 
 
+@given(
+    flow=st.floats(-0.05, 0.05),
+    speed=st.floats(0.1, 1.5),
+    curve=st.tuples(st.floats(5.0, 80.0), st.floats(-800.0, 800.0), st.floats(-2e4, 0.0)),
+)
+def test_pump_head_follows_the_affinity_laws(flow: float, speed: float, curve: tuple[float, float, float]) -> None:
+    """H(nQ, n) = n² H(Q, 1), for curves that lean either way at no flow."""
+    head, _ = pump_head(curve, flow, 1.0)
+    assert pump_head(curve, speed * flow, speed)[0] == pytest.approx(speed**2 * head, rel=1e-9, abs=1e-9)
+
+
 def test_pump_curve_of_two_pairs_is_a_line() -> None:
     curve = pump_polynomial((0.0, 0.02), (40.0, 20.0))
     assert pump_head(curve, 0.005, 1.0) == pytest.approx((35.0, -1000.0), rel=1e-12)

@@ -134,6 +134,12 @@ def test_seawater_without_salt_is_fresh() -> None:
     assert found == pytest.approx(case["density_kg_m3"], abs=case["tolerance_kg_m3"])
 
 
+def test_seawater_vapour_pressure_is_that_of_the_activity_of_its_water() -> None:
+    """Hand: exp(−φ m M) = exp(−0.9024 × 1.16058 × 0.0180153) = 0.98131 at 25 °C; φ and m of standard seawater from memory."""
+    ratio = seawater_properties(298.15, 35.16504).vapour_pressure_pa / water_properties(298.15).vapour_pressure_pa
+    assert ratio == pytest.approx(0.98131, abs=0.001)
+
+
 def test_seawater_viscosity_agrees_with_its_library() -> None:
     coolprop = pytest.importorskip("CoolProp.CoolProp")
     for salinity in (5.0, 20.0, 35.0, 41.0):
@@ -175,6 +181,12 @@ def test_glycol_vapour_pressure_is_waters_times_its_mole_fraction() -> None:
     """Hand, 50 % ethylene glycol by mass at 20 °C: 27.754 and 8.056 mol a kg/1000, so 0.77504 × 2339.3 Pa = 1813.0 Pa."""
     found = glycol_properties("ethylene-glycol", 293.15, 0.5).vapour_pressure_pa
     assert found == pytest.approx(1813.0, rel=WATER["vapour_tolerance"])
+
+
+def test_glycol_vapour_pressure_by_volume_is_that_of_its_mass_fraction() -> None:
+    """Hand, 50 % ethylene glycol by volume at 20 °C: 1113/(1113 + 998.2) = 52.719 % by mass, 26.245 and 8.494 mol: 0.75550 × 2339.3 Pa."""
+    found = glycol_properties("ethylene-glycol", 293.15, 0.5, by_volume=True).vapour_pressure_pa
+    assert found == pytest.approx(1767.3, rel=WATER["vapour_tolerance"])
 
 
 def test_glycol_is_liquid_down_to_its_freezing_point_and_no_further() -> None:
