@@ -72,13 +72,6 @@ def test_crane_7_1_smooth_pipe() -> None:
     assert float(friction_factor(reynolds, 0.0)) == pytest.approx(0.0179, rel=0.015)
 
 
-def test_crane_7_32_suction_head_available() -> None:
-    """Crane TP-410 7-32: 5 psig tank, 0.256 psia, 25 ft lift, 6 ft loss, 62.364 lb/ft³: 13.9 ft. A column of the liquid, in feet."""
-    psi, density = 6894.757293168361, 62.364 * 0.45359237 / FOOT**3
-    available = (5.0 + 14.696 - 0.256) * psi / (density * G) / FOOT - 25.0 - 6.0
-    assert available == pytest.approx(13.9, abs=0.05)
-
-
 def test_munson_3_10_siphon_at_the_vapour_limit() -> None:
     """Munson Ex. 3.10 (from memory): outlet 5 ft below the floor, water 15 ft above it, 14.7 and 0.256 psia: top at 28.2 ft; 1 %."""
     psi, density = 6894.757293168361, 62.4 * 0.45359237 / FOOT**3

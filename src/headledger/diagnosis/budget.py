@@ -10,7 +10,7 @@ from math import sqrt
 import numpy as np
 from numpy.typing import NDArray
 
-from headledger.diagnosis.layout import Layout, liquid_at
+from headledger.diagnosis.layout import Layout, liquid_at, still_liquid_k
 from headledger.diagnosis.means import SpellMeans
 from headledger.diagnosis.state import Applied, State, evaluate
 from headledger.plant.gauges import Gauge
@@ -211,9 +211,10 @@ def _ambient_mark(layout: Layout) -> Array:
     ambient = layout.job.site.ambient_k
     if ambient is None:
         return np.zeros(layout.gauge_count)
-    step = 1.0
-    density = [float(liquid_at(layout.job.liquid, ambient + side).density_kg_m3) for side in (-step, step)]
-    slope = (density[1] - density[0]) / (2.0 * step)
+    sides_k = [still_liquid_k(layout.job.liquid, ambient + side) for side in (-1.0, 1.0)]
+    density = [float(liquid_at(layout.job.liquid, side_k).density_kg_m3) for side_k in sides_k]
+    # a leg below its freezing point does not grow heavier
+    slope = (density[1] - density[0]) / 2.0
     own = layout.ambient_leg_density_kg_m3
     marks = np.zeros(layout.gauge_count)
     for row, gauge in enumerate(layout.job.gauges):
@@ -230,10 +231,13 @@ def _liquid_mark(
     """Change of readings and drops for one standard deviation of density or of temperature, by a central difference."""
     liquid = liquid_at(layout.job.liquid, spell.temperature_k)
     moved = []
-    for side in (-0.5, 0.5):
+    sides_k = [still_liquid_k(layout.job.liquid, spell.temperature_k + side * item.sd) for side in (-0.5, 0.5)]
+    for side, side_k in zip((-0.5, 0.5), sides_k, strict=True):
         if item.kind is InputKind.DENSITY:
             changed = replace(liquid, density_kg_m3=float(liquid.density_kg_m3) * (1.0 + side * item.sd))
         else:
-            changed = liquid_at(layout.job.liquid, spell.temperature_k + side * item.sd)
+            changed = liquid_at(layout.job.liquid, side_k)
         moved.append(evaluate(layout, spell, state.point, applied=applied, liquid=changed))
-    return moved[1].reading_pa - moved[0].reading_pa, moved[1].drop_m - moved[0].drop_m
+    # one side may have stopped at the freezing point: the slope found over what is left holds for the whole step
+    whole = item.sd / (sides_k[1] - sides_k[0]) if item.kind is InputKind.TEMPERATURE and item.sd else 1.0
+    return whole * (moved[1].reading_pa - moved[0].reading_pa), whole * (moved[1].drop_m - moved[0].drop_m)

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from headledger.physics.earth import gravity_m_s2, standard_pressure_pa
-from headledger.physics.liquids import LiquidProperties, liquid_properties
+from headledger.physics.liquids import LiquidProperties, liquid_properties, temperature_limits_k
 from headledger.physics.losses import LossTable, RunLoss, pump_polynomial
 from headledger.physics.network import Graph, build_graph
 from headledger.physics.tapping import AIR_WEIGHT_PA_M, Taps
@@ -56,6 +56,21 @@ def liquid_at(spec: LiquidSpec, temperature_k: float) -> LiquidProperties:
         viscosity_pa_s=spec.viscosity_pa_s,
         vapour_pressure_pa=spec.vapour_pressure_pa,
     )
+
+
+def liquid_limits_k(spec: LiquidSpec) -> tuple[float, float]:
+    """Coldest and hottest temperature at which the job's liquid is known. [K]"""
+    return temperature_limits_k(
+        kind=str(spec.kind),
+        concentration_fraction=spec.concentration_fraction,
+        by_volume=spec.concentration_by_volume,
+    )
+
+
+def still_liquid_k(spec: LiquidSpec, temperature_k: float) -> float:
+    """A temperature, or the nearest one at which the job's liquid is known. [K]"""
+    low_k, high_k = liquid_limits_k(spec)
+    return min(max(temperature_k, low_k), high_k)
 
 
 def run_loss(run: Run) -> RunLoss:
@@ -171,7 +186,9 @@ class Layout:
     def ambient_leg_density_kg_m3(self) -> float | None:
         """Density of stagnant process legs, where the ambient temperature is given. [kg/m³]"""
         ambient = self.job.site.ambient_k
-        return None if ambient is None else float(liquid_at(self.job.liquid, ambient).density_kg_m3)
+        if ambient is None:
+            return None
+        return float(liquid_at(self.job.liquid, still_liquid_k(self.job.liquid, ambient)).density_kg_m3)
 
     def leg_density_kg_m3(self, gauge: Gauge) -> float | None:
         """Density of what fills a gauge's leg where that is not the flowing liquid; 0 for a dry leg. [kg/m³]"""

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from headledger.diagnosis.layout import Layout, liquid_at
+from headledger.diagnosis.layout import Layout, liquid_at, liquid_limits_k
 from headledger.errors import JobError, Problem, QuantityError
 from headledger.plant.digest import Digest, common_grid
 from headledger.plant.gauges import Gauge, Signal
@@ -303,4 +303,13 @@ def _temperature(columns: _Columns, job: Job, remarks: list[str]) -> Array:
     if column is None or job.liquid.temperature_unit is None:
         return np.full(columns.index.size, np.nan)
     unit = _logged_unit(column, job.liquid.temperature_unit, "temperature of the liquid", remarks, None)
-    return np.asarray(column.mean * unit.factor + unit.offset)
+    logged_k = column.mean * unit.factor + unit.offset
+    low_k, high_k = liquid_limits_k(job.liquid)
+    # a sensor that fell off says nothing of the liquid
+    outside = (logged_k < low_k) | (logged_k > high_k)
+    if outside.any():
+        remarks.append(
+            f"liquid: {int(outside.sum())} of {int(np.isfinite(logged_k).sum())} blocks of its logged temperature lie outside "
+            f"{low_k - 273.15:.1f} to {high_k - 273.15:.1f} °C, where it is known; they were left aside."
+        )
+    return np.asarray(np.where(outside, np.nan, logged_k))
