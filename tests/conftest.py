@@ -10,6 +10,7 @@ import textual.constants
 
 from headledger.diagnosis.result import CheckResult
 from tests import made_results
+from tests.sample_results import SAMPLES, sample_result
 
 
 def pytest_configure() -> None:
@@ -21,6 +22,12 @@ def pytest_configure() -> None:
         os.environ.pop(name, None)
     hypothesis.settings.register_profile("house", deadline=None, max_examples=60, derandomize=True)
     hypothesis.settings.load_profile("house")
+
+
+@pytest.fixture(scope="session", params=SAMPLES)
+def any_sample(request: pytest.FixtureRequest) -> CheckResult:
+    """The check of each sample job in turn, made once."""
+    return sample_result(request.param)
 
 
 @pytest.fixture(scope="session")

@@ -5,6 +5,8 @@ from __future__ import annotations
 from dataclasses import replace
 from pathlib import Path
 
+import numpy as np
+
 from headledger.diagnosis.result import (
     CauseFound,
     CauseKind,
@@ -12,10 +14,13 @@ from headledger.diagnosis.result import (
     FlowFound,
     GaugeFound,
     GaugeSpell,
+    GradeStep,
     InputFile,
     Place,
     Rival,
+    RunGrade,
     SpellFound,
+    Trend,
     Verdict,
 )
 from headledger.plant.digest import Reject
@@ -88,18 +93,57 @@ def made_job() -> Job:
     )
 
 
-def made_spell(number: int, kind: SpellKind, flow_m3_h: float) -> SpellFound:
+def made_spell(number: int, kind: SpellKind, flow_m3_h: float, *, blocked: bool = False) -> SpellFound:
     """A quarter of an hour of 900 rows, all three runs at one flow."""
     start_s = EIGHT_O_CLOCK_S + 1800.0 * (number - 1)
     flows = tuple(
         FlowFound(run=f"R{i}", flow_m3_s=flow_m3_h / 3600.0, u95_m3_s=0.02 * flow_m3_h / 3600.0) for i in range(1, 4)
     )
-    return SpellFound(id=number, kind=kind, start_s=start_s, end_s=start_s + 900.0, samples=900, flows=flows)
+    return SpellFound(
+        id=number,
+        kind=kind,
+        start_s=start_s,
+        end_s=start_s + 900.0,
+        samples=900,
+        flows=flows,
+        grade=tuple(made_grade(i, flow_m3_h, blocked=blocked) for i in range(1, 4)),
+    )
+
+
+def head_m(station: int, flow_m3_h: float) -> float:
+    """Head of the made job's grade line: 42 m, and 0.8 m lost in each run at 36 m³/h, in R2 1.6 m."""
+    return 42.0 - 0.8 * (flow_m3_h / 36.0) ** 2 * (station - 1 + (station > 2))
+
+
+def made_grade(number: int, flow_m3_h: float, *, blocked: bool) -> RunGrade:
+    """The grade line of one run; half of what R2 loses may be a blockage, the second cause of the result."""
+    step = GradeStep(cause=1, drop_m=0.8 * (flow_m3_h / 36.0) ** 2)
+    return RunGrade(
+        run=f"R{number}",
+        is_open=True,
+        start_m=head_m(number, flow_m3_h),
+        end_m=head_m(number + 1, flow_m3_h),
+        start_u95_m=0.1,
+        end_u95_m=0.1,
+        steps=(step,) if number == 2 and flow_m3_h and blocked else (),
+    )
 
 
 def found_gauge(tag: str, station: str, verdict: Verdict, **changes: object) -> GaugeFound:
     """A gauge of 3.2 bar in both spells, 0.005 ± 0.03 bar off; `changes` replace fields."""
-    spells = tuple(GaugeSpell(id=i, reading_pa=320_500.0, expected_pa=320_000.0, u95_pa=3_000.0) for i in (1, 2))
+    number = min(int(tag[-1]), 4) if tag[-1].isdigit() else 4
+    spells = tuple(
+        GaugeSpell(
+            id=i,
+            reading_pa=320_500.0,
+            expected_pa=320_000.0,
+            u95_pa=3_000.0,
+            head_m=head_m(number, flow) + 0.05,
+            expected_head_m=head_m(number, flow),
+            head_u95_m=0.3,
+        )
+        for i, flow in ((1, 0.0), (2, 36.0))
+    )
     gauge = GaugeFound(
         tag=tag,
         station=station,
@@ -114,6 +158,28 @@ def found_gauge(tag: str, station: str, verdict: Verdict, **changes: object) -> 
     return replace(gauge, **changes)  # type: ignore[arg-type]
 
 
+def made_reading(number: int, reading_pa: float, expected_pa: float, u95_pa: float, head: float) -> GaugeSpell:
+    """A reading with the heads that belong to it, the liquid weighing 9 800 Pa a metre."""
+    return GaugeSpell(
+        id=number,
+        reading_pa=reading_pa,
+        expected_pa=expected_pa,
+        u95_pa=u95_pa,
+        head_m=head + (reading_pa - expected_pa) / 9_800.0,
+        expected_head_m=head,
+        head_u95_m=u95_pa / 9_800.0,
+    )
+
+
+def made_trend() -> Trend:
+    """A reading every half minute over both spells; the third gauge stands a little higher."""
+    start_s = np.asarray(EIGHT_O_CLOCK_S + 30.0 * np.arange(90), dtype=np.float64)
+    reading = np.where(start_s < EIGHT_O_CLOCK_S + 1200.0, 320_500.0, 290_500.0)[:, None] + np.zeros((90, 5))
+    reading[:, 2] += 20_000.0
+    reading[40:44, 0] = np.nan
+    return Trend(start_s=start_s, width_s=30.0, reading_pa=reading)
+
+
 def sound_result() -> CheckResult:
     """Every gauge passes, no cause, nothing rejected."""
     return CheckResult(
@@ -123,6 +189,7 @@ def sound_result() -> CheckResult:
         clean_probability=0.97,
         gauges=tuple(found_gauge(f"PT-{i}", f"S{min(i, 4)}", Verdict.PASS) for i in range(1, 6)),
         causes=(),
+        trend=made_trend(),
     )
 
 
@@ -136,8 +203,8 @@ def troubled_result() -> CheckResult:
         error_pa=21_000.0,
         causes=(0,),
         spells=(
-            GaugeSpell(id=1, reading_pa=341_000.0, expected_pa=320_000.0, u95_pa=3_000.0),
-            GaugeSpell(id=2, reading_pa=309_000.0, expected_pa=288_000.0, u95_pa=4_000.0),
+            made_reading(1, 341_000.0, 320_000.0, 3_000.0, head_m(3, 0.0)),
+            made_reading(2, 309_000.0, 288_000.0, 4_000.0, head_m(3, 36.0)),
         ),
         why="PT-3 is 0.21 bar high in both spells, more than three times its tolerance of 0.06 bar.",
     )
@@ -164,6 +231,7 @@ def troubled_result() -> CheckResult:
     sound = sound_result()
     return replace(
         sound,
+        spells=(made_spell(1, SpellKind.STILL, 0.0), made_spell(2, SpellKind.FLOWING, 36.0, blocked=True)),
         inputs=(InputFile(file="log.csv", sha256="ab" * 32, rows=5400, rejected=1),),
         clean_probability=0.004,
         gauges=(*sound.gauges[:2], failed, open_question, alone),

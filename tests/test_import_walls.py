@@ -10,13 +10,10 @@ from pathlib import Path
 import pytest
 
 SOURCE = Path(__file__).parents[1] / "src" / "headledger"
-HEAVY = frozenset(
-    {"numpy", "scipy", "pandas", "pint", "rich", "textual", "textual_plot", "reportlab", "python_calamine"}
-)
+HEAVY = frozenset({"numpy", "scipy", "pandas", "pint", "rich", "textual", "reportlab", "python_calamine"})
 # Who may import what, by the first folder or module under the package.
 OWNERS = {
     "textual": {"tui"},
-    "textual_plot": {"tui"},
     "rich": {"cli", "tui", "sheets"},
     "pandas": {"readers", "sheets"},
     "pint": {"quantities"},

@@ -9,6 +9,7 @@ import contextlib
 import io
 import re
 import shlex
+import tempfile
 from pathlib import Path
 
 import pytest
@@ -21,9 +22,14 @@ SHOWN = re.compile(r"```console\n\$ headledger (?P<command>[^\n]*)\n(?P<output>.
 
 
 def printed(command: str) -> str:
-    """Standard output of a command."""
+    """What a command shows in a terminal, run in an empty folder."""
     out = io.StringIO()
-    with contextlib.redirect_stdout(out):
+    with (
+        tempfile.TemporaryDirectory() as folder,
+        contextlib.chdir(folder),
+        contextlib.redirect_stdout(out),
+        contextlib.redirect_stderr(out),
+    ):
         code = main(shlex.split(command))
     assert code in (ExitCode.SOUND, ExitCode.TROUBLE)
     return out.getvalue()
@@ -36,9 +42,9 @@ def test_readme_output_is_what_the_command_prints(match: re.Match[str]) -> None:
     assert match["output"] == printed(match["command"])
 
 
-def test_readme_shows_a_check_and_a_hand_calculation() -> None:
+def test_readme_shows_a_check_a_sheet_and_a_hand_calculation() -> None:
     commands = [match["command"].split()[0] for match in SHOWN.finditer(README.read_text(encoding="utf-8"))]
-    assert commands == ["check", "expect"]
+    assert commands == ["check", "sheet", "expect"]
 
 
 def test_readme_names_every_sample() -> None:

@@ -40,6 +40,7 @@ def test_wheel_holds_data_style_sheet_and_type_marker(wheel_names: set[str]):
     expected = packed(ROOT / "src" / "headledger" / "physics" / "data", "headledger/physics/data")
     assert expected
     assert expected | {"headledger/tui/app.tcss", "headledger/py.typed"} <= wheel_names
+    assert packed(ROOT / "src" / "headledger" / "sheets" / "fonts", "headledger/sheets/fonts") <= wheel_names
 
 
 def test_wheel_holds_nothing_of_the_tests(wheel_names: set[str]):

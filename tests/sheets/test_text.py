@@ -40,7 +40,10 @@ def test_report_of_trouble_answers_the_five_questions(troubled_result: CheckResu
     assert "Anything wrong? Yes. Of 5 gauges 1 fails, 1 is unresolved, 1 is unchecked and 2 pass." in report
     assert "Where? PT-3 reads 0.21 bar high at every flow." in report
     assert "Gauge or pipe? PT-3: the gauge. Run R2: not told apart: the pipe 55 %, the gauge 42 %." in report
-    assert "How sure? Zero-shift at PT-3 96 %; blockage at run R2 55 %; that nothing is wrong < 1 %." in report
+    assert (
+        "How sure? Zero-shift at PT-3 96 %; blockage at run R2 55 %, or span-error at PT-4 42 %; that nothing is wrong < 1 %."
+        in report
+    )
     assert "What next? At PT-3: see to a zero shift" in report
     assert "Find out on site whether it is a blockage or a span error." in report
     assert "To check PT-5:" in report

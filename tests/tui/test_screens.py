@@ -18,16 +18,21 @@ from textual.widgets import Label, Static
 
 from headledger.diagnosis.result import CheckResult, Verdict
 from headledger.errors import JobError, NetworkError, NothingToCheckError, Problem
+from headledger.sheets.drawing import Drawing
 from headledger.tui.app import FolderCheck, HeadledgerApp
 from headledger.tui.ending import Ending
+from headledger.tui.gauge_search import GaugeSearch
 from headledger.tui.screens.ended import EndedScreen
 from headledger.tui.screens.findings import FindingsScreen
+from headledger.tui.screens.gauge import GaugeScreen
 from headledger.tui.screens.working import WorkingScreen
 from headledger.tui.widgets.answers import Answers
 from headledger.tui.widgets.findings_list import FindingsList
 from headledger.tui.widgets.gauge_detail import GaugeDetail
 from headledger.tui.widgets.gauge_table import GaugeTable
+from headledger.tui.widgets.picture_view import PictureView
 from tests.made_results import found_gauge
+from tests.sample_results import sample_result
 
 SMALL, LARGE = (80, 24), (160, 48)
 
@@ -96,6 +101,12 @@ def contrast(ink: Color, paper: Color) -> float:
     return (light + 0.05) / (dark + 0.05)
 
 
+def picture(app: HeadledgerApp) -> Drawing:
+    drawing = app.screen.query_one("#picture", PictureView).drawing
+    assert drawing is not None
+    return drawing
+
+
 def table_rows(app: HeadledgerApp) -> list[list[str]]:
     table = app.screen.query_one(GaugeTable)
     return [[str(cell) for cell in table.get_row_at(row)] for row in range(table.row_count)]
@@ -128,34 +139,151 @@ async def test_every_part_of_the_screen_has_room(troubled_result: CheckResult, s
     async with app.run_test(size=size) as pilot:
         await settled(pilot)
         screen = app.screen.region
-        for selector in ("TitleLine", "Answers", "GaugeTable", "#aside", "#caution", "Footer"):
+        for selector in ("TitleLine", "Answers", "#picture", "GaugeTable", "#caution", "Footer"):
             region = app.screen.query_one(selector).region
             assert region.area > 0, selector
             assert screen.contains_region(region), selector
-        assert app.screen.query_one(GaugeTable).region.height >= 7
-        assert app.screen.query_one("#aside").region.height >= 6
+        assert app.screen.query_one(GaugeTable).region.height >= 6
+        assert app.screen.query_one("#picture").region.height >= 10
+        assert app.screen.query_one("#aside").display is (size == LARGE)
 
 
-async def test_findings_stand_beside_the_gauges_where_there_is_width(troubled_result: CheckResult):
+async def test_findings_stand_beside_the_picture_where_there_is_width_and_in_its_place_where_not(
+    troubled_result: CheckResult,
+):
     for size, beside in ((SMALL, False), (LARGE, True)):
         app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
         async with app.run_test(size=size) as pilot:
             await settled(pilot)
-            table, aside = app.screen.query_one(GaugeTable).region, app.screen.query_one("#aside").region
-            assert (aside.x >= table.right) is beside
-            assert (aside.y >= table.bottom) is not beside
+            await pilot.press("f")
+            await pilot.pause()
+            aside = app.screen.query_one("#aside").region
+            assert aside.height >= 12
+            assert app.screen.query_one("#line").display is beside
+            if beside:
+                assert aside.x >= app.screen.query_one("#picture").region.right
 
 
-async def test_arrow_keys_show_the_gauge_under_the_cursor(troubled_result: CheckResult):
+async def test_arrow_keys_choose_the_gauge_in_picture_and_detail(troubled_result: CheckResult):
     app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
     async with app.run_test(size=SMALL) as pilot:
         await settled(pilot)
-        assert "PT-3 at S3   ▲ fail" in shown(app, "GaugeDetail")
-        assert "1 still    3.410     3.200  0.030  barg" in shown(app, "GaugeDetail")
-        await pilot.press("down", "down")
+        assert [mark.label for mark in picture(app).marks if mark.chosen] == ["PT-3"]
+        detail = shown(app, "GaugeDetail")
+        assert "PT-3 at S3   ▲ fail" in detail
+        assert "  1 still    3.410     3.200  0.030  +0.210" in detail
+        await pilot.press("down")
+        await pilot.pause()
+        assert [mark.label for mark in picture(app).marks if mark.chosen] == ["PT-4"]
+        await pilot.press("down")
         detail = shown(app, "GaugeDetail")
         assert "PT-5 at S4   – unchecked" in detail
         assert "Nothing else in the data determines the pressure at PT-5." in detail
+
+
+async def test_arrow_keys_step_through_the_spells_and_round(troubled_result: CheckResult):
+    """The first picture is the one with flow, where losses show."""
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        assert picture(app).caption.startswith("Spell 2 of 2, flowing, 36.00 ± 0.72 m3/h")
+        assert "▸ 2 flowing" in shown(app, "GaugeDetail")
+        await pilot.press("right")
+        assert picture(app).caption.startswith("Spell 1 of 2, still; grade line ± 0.10 m")
+        assert "▸ 1 still" in shown(app, "GaugeDetail")
+        await pilot.press("left")
+        assert picture(app).caption.startswith("Spell 2 of 2")
+
+
+async def test_key_w_draws_another_way_and_is_there_only_where_there_is_one(
+    troubled_result: CheckResult,
+):
+    branched = sample_result("branched-sound")
+    app = HeadledgerApp(Path("branched"), check=answers_with(branched))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        seen = set()
+        for _ in range(3):
+            seen.add(picture(app).stops[-1].text)
+            await pilot.press("w")
+        assert seen == {"NORTH", "EAST", "SOUTH"}
+        assert "way" in {binding.binding.id for binding in app.screen.active_bindings.values()}
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        assert "way" not in {binding.binding.id for binding in app.screen.active_bindings.values()}
+
+
+async def test_choosing_a_gauge_off_the_way_draws_one_past_it():
+    app = HeadledgerApp(Path("branched"), check=answers_with(sample_result("branched-sound")))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        table = app.screen.query_one(GaugeTable)
+        for tag in ("PT-33", "PT-35", "PI-34"):
+            table.choose(tag)
+            await pilot.pause()
+            assert [mark.label for mark in picture(app).marks if mark.chosen] == [tag]
+
+
+async def test_enter_opens_the_page_of_a_gauge_and_escape_comes_back_to_where_it_ended(troubled_result: CheckResult):
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        await pilot.press("enter")
+        await pilot.pause()
+        assert isinstance(app.screen, GaugeScreen)
+        assert "PT-3 at S3   ▲ fail" in shown(app, "GaugeDetail")
+        assert "PT-3 reads 0.21 bar high at every flow." in shown(app, ".finding")
+        assert "Range      0 to 10 barg" in shown(app, "#identity")
+        drawing = app.screen.query_one("#trend", PictureView).drawing
+        assert drawing is not None
+        assert drawing.caption.startswith("PT-3: reading and expected")
+        await pilot.press("n", "right")
+        await pilot.pause()
+        assert "PT-4 at S4   ? unresolved" in shown(app, "GaugeDetail")
+        assert "Run R2 loses 0.31 bar more" in shown(app, ".finding")
+        assert "▸ 1 still" in shown(app, "GaugeDetail")
+        await pilot.press("escape")
+        await pilot.pause()
+        assert isinstance(app.screen, FindingsScreen)
+        assert [mark.label for mark in picture(app).marks if mark.chosen] == ["PT-4"]
+        assert picture(app).caption.startswith("Spell 1 of 2")
+
+
+async def test_page_of_a_gauge_that_said_nothing_says_so_without_a_trend(troubled_result: CheckResult):
+    result = replace(troubled_result, trend=None)
+    app = HeadledgerApp(Path("riser"), check=answers_with(result))
+    async with app.run_test(size=LARGE) as pilot:
+        await settled(pilot)
+        await pilot.press("enter")
+        await pilot.pause()
+        assert app.screen.query_one("#trend", PictureView).drawing is None
+        assert "PT-3 at S3" in shown(app, "GaugeDetail")
+
+
+async def test_palette_finds_a_gauge_by_a_part_of_its_tag(troubled_result: CheckResult):
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await settled(pilot)
+        search = GaugeSearch(app.screen)
+        assert [hit.text async for hit in search.discover()] == ["PT-3", "PT-4", "PT-5", "PT-1", "PT-2"]
+        hits = [hit async for hit in search.search("t-5")]
+        assert [str(hit.help) for hit in hits] == ["– unchecked, at S4"]
+        hits[0].command()
+        await pilot.pause()
+        assert isinstance(app.screen, GaugeScreen)
+        assert "PT-5 at S4" in shown(app, "GaugeDetail")
+
+
+async def test_help_names_every_key_of_the_screen(troubled_result: CheckResult):
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=LARGE) as pilot:
+        await settled(pilot)
+        for key in ("←", "→", "↑", "↓", "enter", "**w**", "**a**", "**f**", "**g**", "**r**"):
+            assert key in FindingsScreen.HELP
+        await pilot.press("question_mark")
+        await pilot.pause()
+        assert app.screen.query("HelpPanel")
 
 
 async def test_key_a_unfolds_the_answers(troubled_result: CheckResult):
@@ -182,16 +310,21 @@ async def test_keys_move_between_gauges_and_findings(troubled_result: CheckResul
         await pilot.pause()
         aside = app.screen.query_one("#aside")
         assert app.focused is aside
-        assert app.screen.query_one(FindingsList).region.y - aside.region.y <= 1
+        assert aside.region.contains_region(app.screen.query_one(FindingsList).region)
+        await pilot.press("f")
+        assert isinstance(app.focused, GaugeTable)
+        await pilot.press("f")
         await pilot.press("g")
         assert isinstance(app.focused, GaugeTable)
+        assert app.screen.query_one("#line").display
 
 
 async def test_brackets_of_names_and_sentences_are_shown_as_written(troubled_result: CheckResult):
     job = replace(troubled_result.job, title="Loop [bar] [/x] [red]")
     gauge = found_gauge("PT[1]", "S[m]", Verdict.FAIL, why="[kPa] [/] kept")
     cause = replace(troubled_result.causes[0], says="reads [bar] high [/b]")
-    result = replace(troubled_result, job=job, gauges=(gauge,), causes=(cause,))
+    spells = tuple(replace(spell, grade=()) for spell in troubled_result.spells)
+    result = replace(troubled_result, job=job, spells=spells, gauges=(gauge,), causes=(cause,))
     app = HeadledgerApp(Path("riser"), check=answers_with(result))
     async with app.run_test(size=LARGE) as pilot:
         await settled(pilot)

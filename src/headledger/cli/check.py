@@ -9,6 +9,7 @@ import click
 
 from headledger.cli.exit_codes import ExitCode
 from headledger.cli.streams import ProgressLine, result_stream, say
+from headledger.cli.targets import refuse_bad_target
 
 if TYPE_CHECKING:
     from headledger.diagnosis.result import CheckResult
@@ -30,7 +31,7 @@ def check(job: str, json_path: str | None, no_color: bool, quiet: bool) -> int:
     from headledger.cli.samples import job_folder
 
     folder = job_folder(job)
-    _refuse_bad_target(json_path)
+    refuse_bad_target(None if json_path == _TO_STDOUT else json_path, "--json")
     from headledger.diagnosis.check import check_folder
 
     with ProgressLine(sys.stderr, shown=not quiet) as progress:
@@ -57,22 +58,10 @@ def exit_code_of(result: CheckResult) -> ExitCode:
     }[outcome_of(result)]
 
 
-def _refuse_bad_target(json_path: str | None) -> None:
-    """Before the work, not after it: a result file that cannot be written."""
-    if json_path is None or json_path == _TO_STDOUT:
-        return
-    from pathlib import Path
-
-    path = Path(json_path)
-    if path.is_dir():
-        raise click.BadParameter(f"{path} is a folder, expected a file to write.", param_hint="--json")
-    if not path.parent.is_dir():
-        raise click.BadParameter(f"{path.parent} is no folder, expected one that exists.", param_hint="--json")
-
-
 def _write_json(result: CheckResult, json_path: str) -> None:
     from pathlib import Path
 
+    from headledger.records.files import write_whole
     from headledger.sheets.to_json import result_to_text
 
     if json_path == _TO_STDOUT:
@@ -82,7 +71,7 @@ def _write_json(result: CheckResult, json_path: str) -> None:
         return
     try:
         # A file name that is no UTF-8 becomes an escape, which JSON knows too.
-        Path(json_path).write_text(result_to_text(result), encoding="utf-8", errors="backslashreplace")
+        write_whole(Path(json_path), result_to_text(result).encode("utf-8", "backslashreplace"))
     except OSError as error:
         raise click.FileError(json_path, hint=error.strerror or str(error)) from error
 

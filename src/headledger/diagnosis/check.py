@@ -10,6 +10,7 @@ import numpy as np
 from headledger.diagnosis.averages import spell_means
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import Finding, list_findings
+from headledger.diagnosis.grade import run_grades, tap_head_m
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.means import SpellMeans
 from headledger.diagnosis.readings import read_timeline
@@ -22,6 +23,7 @@ from headledger.diagnosis.result import (
     GaugeSpell,
     InputFile,
     SpellFound,
+    Trend,
     Verdict,
 )
 from headledger.diagnosis.search import Posterior, search
@@ -118,13 +120,14 @@ def check_job(
     return CheckResult(
         job=job,
         inputs=_inputs(job, digests),
-        spells=tuple(_spell(model, posterior, index) for index in range(len(spells))),
+        spells=tuple(_spell(model, posterior, findings, index) for index in range(len(spells))),
         clean_probability=posterior.clean_probability,
         gauges=tuple(_gauge(model, posterior, findings, gauge, one) for gauge, one in enumerate(judged)),
         causes=tuple(_cause(model, finding) for finding in findings),
         rejects=tuple(reject for digest in digests for reject in digest.rejects),
         reject_count=sum(digest.reject_count for digest in digests),
         remarks=(*job.remarks, *timeline.remarks, *unread_spells(job, stretches)),
+        trend=Trend(start_s=timeline.start_s, width_s=timeline.width_s, reading_pa=timeline.reading_pa),
     )
 
 
@@ -153,8 +156,8 @@ def _inputs(job: Job, digests: Sequence[Digest]) -> tuple[InputFile, ...]:
     return (*tables, *logs.values())
 
 
-def _spell(model: Model, posterior: Posterior, index: int) -> SpellFound:
-    """One spell with the flow of every run under the leading explanation."""
+def _spell(model: Model, posterior: Posterior, findings: Sequence[Finding], index: int) -> SpellFound:
+    """One spell with the flow of every run and the grade line along it, under the leading explanation."""
     spell: SpellMeans = model.spells[index]
     linear = posterior.leading.frame.linear
     flows = linear.states[index].flow_m3_s
@@ -169,6 +172,7 @@ def _spell(model: Model, posterior: Posterior, index: int) -> SpellFound:
             FlowFound(run=run.name, flow_m3_s=float(flow), u95_m3_s=2.0 * float(sd))
             for run, flow, sd in zip(model.layout.job.runs, flows, deviation, strict=True)
         ),
+        grade=run_grades(model, posterior.leading, index, [(f.kind, f.place) for f in findings]),
     )
 
 
@@ -189,7 +193,7 @@ def _gauge(model: Model, posterior: Posterior, findings: Sequence[Finding], gaug
         error_pa=judged.error_pa,
         u95_pa=judged.u95_pa,
         tolerance_pa=judged.tolerance_pa,
-        spells=_gauge_spells(model, gauge, judged, expected),
+        spells=_gauge_spells(model, posterior, gauge, judged, expected),
         causes=causes,
         given=given,
         why=verdict_sentence(noun, judged, [findings[i] for i in causes], [findings[i] for i in given]),
@@ -201,19 +205,32 @@ def model_has_reading(model: Model, gauge: int) -> bool:
     return any(np.isfinite(spell.reading_pa[gauge]) for spell in model.spells)
 
 
-def _gauge_spells(model: Model, gauge: int, judged: Judged, expected: Expected | None) -> tuple[GaugeSpell, ...]:
+def _gauge_spells(
+    model: Model, posterior: Posterior, gauge: int, judged: Judged, expected: Expected | None
+) -> tuple[GaugeSpell, ...]:
     """A gauge's reading and what it should have been, spell by spell."""
     said = {} if expected is None else {int(s): i for i, s in enumerate(expected.spells)}
+    has_head = not model.layout.job.gauges[gauge].is_differential
     rows = []
     for index, spell in enumerate(model.spells):
-        at = said.get(index)
-        known = expected is not None and at is not None and judged.verdict is not Verdict.UNCHECKED
+        reading = float(spell.reading_pa[gauge]) if np.isfinite(spell.reading_pa[gauge]) else None
+        value = u95 = None
+        if expected is not None and index in said and judged.verdict is not Verdict.UNCHECKED:
+            value, u95 = float(expected.value_pa[said[index]]), 2.0 * float(expected.sd_pa[said[index]])
+        heads = [
+            None if not has_head or pa is None else tap_head_m(model, posterior.leading, index, gauge, pa)
+            for pa in (reading, value)
+        ]
+        weight = posterior.leading.frame.linear.states[index].head_weight_pa_m
         rows.append(
             GaugeSpell(
                 id=spell.id,
-                reading_pa=float(spell.reading_pa[gauge]) if np.isfinite(spell.reading_pa[gauge]) else None,
-                expected_pa=float(expected.value_pa[at]) if known and expected is not None else None,
-                u95_pa=2.0 * float(expected.sd_pa[at]) if known and expected is not None else None,
+                reading_pa=reading,
+                expected_pa=value,
+                u95_pa=u95,
+                head_m=heads[0],
+                expected_head_m=heads[1],
+                head_u95_m=None if u95 is None or heads[1] is None else u95 / weight,
             )
         )
     return tuple(rows)

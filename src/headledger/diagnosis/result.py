@@ -4,10 +4,15 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from enum import StrEnum
+from typing import TYPE_CHECKING
 
 from headledger.plant.digest import Reject
 from headledger.plant.job import Job, SpellKind
 from headledger.quantities import Unit
+
+if TYPE_CHECKING:  # the screen draws its first frame before numpy is loaded
+    import numpy as np
+    from numpy.typing import NDArray
 
 
 class Verdict(StrEnum):
@@ -78,6 +83,48 @@ class FlowFound:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class GradeStep:
+    """Head that one cause takes within a run: a step in the grade line.
+
+    Parameters
+    ----------
+    cause : int
+        Index into the causes of the result.
+    drop_m : float
+        Along the run's own direction; negative where it takes less than described. [m]
+    """
+
+    cause: int
+    drop_m: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class RunGrade:
+    """The hydraulic grade line along one run in one spell, under the leading explanation. Heads above the job's datum. [m]
+
+    Parameters
+    ----------
+    run : str
+    is_open : bool
+        False where a shut valve parts the line.
+    start_m, end_m : float
+        At both ends: pressure head plus elevation, with the velocity head of this run's own bore taken off the energy line.
+    start_u95_m, end_u95_m : float
+        With k = 2.
+    steps : tuple of GradeStep
+        What causes in the pipe take of it.
+    """
+
+    run: str
+    is_open: bool
+    start_m: float
+    end_m: float
+    start_u95_m: float
+    end_u95_m: float
+    steps: tuple[GradeStep, ...] = ()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class SpellFound:
     """A stretch of the log in which the flow state held steady.
 
@@ -92,6 +139,8 @@ class SpellFound:
         Rows of the log within it.
     flows : tuple of FlowFound
         One for every run.
+    grade : tuple of RunGrade
+        One for every run.
     """
 
     id: int
@@ -100,6 +149,7 @@ class SpellFound:
     end_s: float
     samples: int
     flows: tuple[FlowFound, ...] = ()
+    grade: tuple[RunGrade, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -114,12 +164,17 @@ class GaugeSpell:
         None where it gave no value.
     expected_pa, u95_pa : float or None
         Predicted from everything but this gauge under the leading explanation; None where nothing determines it.
+    head_m, expected_head_m, head_u95_m : float or None
+        The same as heads of the grade line at its tap, above the job's datum; None for a differential gauge. [m]
     """
 
     id: int
     reading_pa: float | None
     expected_pa: float | None
     u95_pa: float | None
+    head_m: float | None = None
+    expected_head_m: float | None = None
+    head_u95_m: float | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -208,6 +263,25 @@ class InputFile:
     rejected: int
 
 
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Trend:
+    """What the gauges said over the whole log, by blocks of time.
+
+    Parameters
+    ----------
+    start_s : ndarray, shape (blocks,)
+        Start of each block that holds a row, seconds since 1970-01-01 UTC. [s]
+    width_s : float
+        [s]
+    reading_pa : ndarray, shape (blocks, gauges)
+        Block means in each gauge's own reference; nan where it gave none. [Pa]
+    """
+
+    start_s: NDArray[np.float64]
+    width_s: float
+    reading_pa: NDArray[np.float64]
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class CheckResult:
     """Everything a check found.
@@ -227,6 +301,8 @@ class CheckResult:
     reject_count : int
     remarks : tuple of str
         What was taken for granted, converted, or could not be used, a sentence each.
+    trend : Trend or None
+        For the picture of a gauge over time.
     """
 
     job: Job
@@ -238,3 +314,4 @@ class CheckResult:
     rejects: tuple[Reject, ...] = ()
     reject_count: int = 0
     remarks: tuple[str, ...] = ()
+    trend: Trend | None = None

@@ -158,9 +158,10 @@ def verdict_sentence(gauge: Gauge, judged: Judged, causes: Sequence[Finding], gi
         return f"{gauge.tag} gave no reading in any spell."
     unit = gauge.unit.as_difference()
     words = VERDICT_WORDS[judged.verdict]
+    error, doubt = (amount(pa, unit, resolution=judged.u95_pa) for pa in (judged.error_pa, judged.u95_pa))
     numbers = (
-        f"error {amount(judged.error_pa, unit)} ± {amount(abs(judged.u95_pa), unit)} (k = 2), "
-        f"tolerance ± {amount(judged.tolerance_pa, unit)}, {percent(judged.outside_probability)} likely outside"
+        f"error {error} ± {doubt} (k = 2), tolerance ± {amount(judged.tolerance_pa, unit)}, "
+        f"{percent(judged.outside_probability)} likely outside"
     )
     if judged.verdict is Verdict.UNCHECKED:
         return f"{gauge.tag}: {words}."

@@ -18,26 +18,33 @@ def error_columns(gauge: GaugeFound) -> tuple[str, str, str]:
     )
 
 
-def spell_columns(spell: GaugeSpell, unit: Unit) -> tuple[str, str, str]:
-    """Reading, expected and its u95 in the gauge's unit, to the place where the u95 has two significant digits."""
-    values = [
+def spell_columns(spell: GaugeSpell, unit: Unit) -> tuple[str, str, str, str]:
+    """Reading, expected, its u95, and reading less expected in the gauge's unit, to where the u95 has two significant digits."""
+    reading, expected, doubt = (
         None if value is None else value / unit.factor for value in (spell.reading_pa, spell.expected_pa, spell.u95_pa)
-    ]
-    decimals = decimals_for(values[2] or 0.0)
-    return fixed(values[0], decimals), fixed(values[1], decimals), fixed(values[2], decimals)
+    )
+    decimals = decimals_for(doubt or 0.0)
+    off = None if reading is None or expected is None else reading - expected
+    return (
+        fixed(reading, decimals),
+        fixed(expected, decimals),
+        fixed(doubt, decimals),
+        fixed(off, decimals, signed=True),
+    )
 
 
 def flows_line(spell: SpellFound, unit: Unit) -> str:
     """The flows of a spell in words, runs with the same flow named together; ``none`` for a still spell without any."""
     runs_of: dict[str, list[str]] = {}
     for flow in spell.flows:
-        runs_of.setdefault(_flow_text(flow, unit), []).append(flow.run)
-    if not runs_of or list(runs_of) == [_flow_text(FlowFound(run="", flow_m3_s=0.0, u95_m3_s=0.0), unit)]:
+        runs_of.setdefault(flow_words(flow, unit), []).append(flow.run)
+    if not runs_of or list(runs_of) == [flow_words(FlowFound(run="", flow_m3_s=0.0, u95_m3_s=0.0), unit)]:
         return "none"
     return "; ".join(f"{', '.join(runs)}: {text}" for text, runs in runs_of.items())
 
 
-def _flow_text(flow: FlowFound, unit: Unit) -> str:
+def flow_words(flow: FlowFound, unit: Unit) -> str:
+    """A flow with its u95 in words."""
     value, doubt = flow.flow_m3_s / unit.factor, flow.u95_m3_s / unit.factor
     decimals = decimals_for(doubt, most=3)
     if doubt == 0.0:

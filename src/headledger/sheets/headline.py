@@ -165,8 +165,18 @@ def _side(kind: CauseKind) -> str:
 
 def _how_sure(result: CheckResult, leaders: Sequence[CauseFound]) -> str:
     clean = f"that nothing is wrong {percent(result.clean_probability)}"
-    found = [f"{cause_label(cause)} {percent(cause.probability)}" for cause in leaders]
+    found = [_with_rival(cause) for cause in leaders]
     return _capital("; ".join([*found, clean])) + "."
+
+
+def _with_rival(cause: CauseFound) -> str:
+    """A cause with its probability, and what it may be instead where that is nearly as probable."""
+    text = f"{cause_label(cause)} {percent(cause.probability)}"
+    near = [rival for rival in cause.rivals if rival.probability >= COMPARABLE * cause.probability][:1]
+    for rival in near:
+        label = rival.kind.value if rival.place == cause.place else cause_label(rival)
+        text += f", or {label} {percent(rival.probability)}"
+    return text
 
 
 def _what_next(result: CheckResult, leaders: Sequence[CauseFound]) -> tuple[str, ...]:

@@ -16,6 +16,7 @@ from headledger.diagnosis.result import (
     GaugeSpell,
     Place,
     Rival,
+    RunGrade,
     SpellFound,
 )
 from headledger.plant.digest import Reject
@@ -41,7 +42,7 @@ def result_to_json(result: CheckResult) -> dict[str, Any]:
                 for item in result.inputs
             ],
         },
-        "spells": [_spell(spell, result.job.display.flow) for spell in result.spells],
+        "spells": [_spell(spell, result.job.display.flow, result.job.display.length) for spell in result.spells],
         "clean_probability": _number(result.clean_probability),
         "gauges": [_gauge(gauge) for gauge in result.gauges],
         "causes": [_cause(cause) for cause in result.causes],
@@ -91,7 +92,7 @@ def _in_unit(value_si: float | None, unit: Unit) -> float | None:
     return _number(_scaled(value_si, 1.0 / unit.factor))
 
 
-def _spell(spell: SpellFound, flow_unit: Unit) -> dict[str, Any]:
+def _spell(spell: SpellFound, flow_unit: Unit, length_unit: Unit) -> dict[str, Any]:
     return {
         "id": spell.id,
         "kind": spell.kind.value,
@@ -107,6 +108,20 @@ def _spell(spell: SpellFound, flow_unit: Unit) -> dict[str, Any]:
             }
             for flow in spell.flows
         ],
+        "grade": [_grade(grade, length_unit) for grade in spell.grade],
+    }
+
+
+def _grade(grade: RunGrade, unit: Unit) -> dict[str, Any]:
+    return {
+        "run": grade.run,
+        "open": grade.is_open,
+        "start": _in_unit(grade.start_m, unit),
+        "end": _in_unit(grade.end_m, unit),
+        "start_u95": _in_unit(grade.start_u95_m, unit),
+        "end_u95": _in_unit(grade.end_u95_m, unit),
+        "unit": unit.text,
+        "steps": [{"cause": step.cause, "drop": _in_unit(step.drop_m, unit)} for step in grade.steps],
     }
 
 

@@ -25,7 +25,8 @@ def marks(view: View) -> list[Mark]:
             for still in ((False, True) if any(spell.is_still for spell in view.model.spells) else (False,))
         ]
         for shrinks, still in forms:
-            vector = view.drop_vector(_steps(view, run, shrinks=shrinks, still=still))
+            steps = _steps(view, run, shrinks=shrinks, still=still)
+            vector = view.drop_vector(steps)
             least = view.least_size(vector)
             if least < descent:
                 found.append(
@@ -36,6 +37,7 @@ def marks(view: View) -> list[Mark]:
                         prior=SizePrior(least=least, most=descent, negative=False),
                         share=1.0 / len(forms),
                         unit=view.layout.job.display.length,
+                        drops_m=tuple(steps),
                         form=" ".join((["shrinks"] if shrinks else []) + (["still"] if still else [])),
                     )
                 )

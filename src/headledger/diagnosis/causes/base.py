@@ -42,6 +42,8 @@ class Mark:
         Reported size is ``base + factor * size``.
     unit : Unit or None
         In which the size is spoken of.
+    drops_m : tuple of ndarray, shape (runs,) each
+        Head that a unit of its size takes in every run, spell by spell; empty for what takes none. [m]
     noise_factor : float
         By which it stretches the noise of its gauges. [-]
     form : str
@@ -58,6 +60,7 @@ class Mark:
     size_base: float = 0.0
     size_factor: float = 1.0
     unit: Unit | None = None
+    drops_m: tuple[Array, ...] = ()
     noise_factor: float = 1.0
     form: str = ""
 

@@ -52,6 +52,7 @@ def blockages(view: View) -> list[Mark]:
                     place=Place(run=noun.name),
                     vector=vector,
                     prior=SizePrior(least=least, most=largest_pa / unit_pa, negative=False),
+                    drops_m=tuple(drops),
                 )
             )
     return found
@@ -75,6 +76,7 @@ def low_losses(view: View) -> list[Mark]:
                     vector=vector,
                     prior=SizePrior(least=least, most=stated, negative=False),
                     size_factor=-1.0,
+                    drops_m=tuple(-drop for drop in drops),
                 )
             )
     return found

@@ -1,4 +1,4 @@
-"""The gauge under the cursor: its verdict in words, and what it read and should have read."""
+"""One gauge in words and numbers: its verdict, and what it read and should have read, spell by spell."""
 
 from __future__ import annotations
 
@@ -21,6 +21,7 @@ class GaugeDetail(Static):
     """
 
     gauge: var[GaugeFound | None] = var(None, init=False)
+    spell_id: var[int] = var(0, init=False)
 
     def __init__(self, spells: tuple[SpellFound, ...]) -> None:
         super().__init__("", markup=False)
@@ -28,6 +29,13 @@ class GaugeDetail(Static):
 
     def watch_gauge(self) -> None:
         """Show the newly chosen gauge."""
+        self._show()
+
+    def watch_spell_id(self) -> None:
+        """Show which spell is looked at."""
+        self._show()
+
+    def _show(self) -> None:
         if self.gauge is not None:
             self.update(self._content(self.gauge))
 
@@ -39,13 +47,14 @@ class GaugeDetail(Static):
         return Content("").join([*parts, Content("\n"), self._spell_rows(gauge)])
 
     def _spell_rows(self, gauge: GaugeFound) -> Content:
-        rows = [("Spell", "reads", "expected", "± u95", "")]
+        rows = [(f"  {gauge.unit.text}", "reads", "expected", "± u95", "off by")]
         for spell in gauge.spells:
-            reading, expected, doubt = spell_columns(spell, gauge.unit)
-            rows.append((f"{spell.id} {self._kinds.get(spell.id, '')}", reading, expected, doubt, gauge.unit.text))
+            mark = "▸ " if spell.id == self.spell_id else "  "
+            name = f"{mark}{spell.id} {self._kinds.get(spell.id, '')}"
+            rows.append((name, *spell_columns(spell, gauge.unit)))
         widths = [max(len(row[column]) for row in rows) for column in range(5)]
         lines = []
-        for name, *numbers, unit in rows:
-            cells = [name.ljust(widths[0]), *(n.rjust(w) for n, w in zip(numbers, widths[1:4], strict=True)), unit]
+        for name, *numbers in rows:
+            cells = [name.ljust(widths[0]), *(n.rjust(w) for n, w in zip(numbers, widths[1:], strict=True))]
             lines.append("  ".join(cells).rstrip())
         return Content("\n").join([Content.styled(lines[0], "underline"), *map(Content, lines[1:])])

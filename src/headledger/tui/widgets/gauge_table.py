@@ -43,6 +43,10 @@ class GaugeTable(DataTable[Text]):
         """The gauge that a row shows."""
         return self._gauges[row]
 
+    def choose(self, tag: str) -> None:
+        """Move the cursor to a gauge."""
+        self.move_cursor(row=[gauge.tag for gauge in self._gauges].index(tag))
+
     def _fill(self) -> None:
         row = self.cursor_row
         self.clear()
