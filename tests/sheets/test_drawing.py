@@ -52,6 +52,11 @@ def test_ticks_lie_on_the_scale_and_their_labels_tell_them_apart(low: float, ext
     assert len(set(tick_labels(values))) == len(values)
 
 
+@given(low=st.floats(-1e4, 1e4), extent=st.floats(1e-2, 1e4), most=st.integers(1, 6))
+def test_ticks_are_never_none(low: float, extent: float, most: int):
+    assert ticks(low, low + extent, most)
+
+
 def test_ticks_of_a_hand_example():
     """From 0 to 50 in at most five parts: every 10; labels without decimals."""
     assert ticks(0.0, 50.0, 5) == (0.0, 10.0, 20.0, 30.0, 40.0, 50.0)

@@ -295,14 +295,16 @@ def _beside(column: int, row: int, length: int) -> tuple[list[Box], list[Box]]:
 
 def _draw_notes(drawing: Drawing, fields: Sequence[_Field], sheet: _Sheet, placer: Placer) -> None:
     for note in drawing.notes:
-        column, row = fields[note.panel].cell((note.x, note.y))
+        frame = fields[note.panel]
+        column, row = frame.cell((note.x, note.y))
         length = len(note.text)
         above = [Box(column - length // 2, row - by, column - length // 2 + length, row - by + 1) for by in (1, 2)]
         places = above if note.role is Role.NAME else []
         for by in (1, -1):
             near, far = _beside(column + by, row, length)
             places += [*near, *far]
-        spot = placer.place(places)
+        # a word about the pipe that strayed into the heads would be taken for one about them
+        spot = placer.place([box for box in places if frame.top <= box.top < frame.top + frame.height])
         if spot:
             sheet.write(int(spot.left), int(spot.top), note.text, note.role)
 

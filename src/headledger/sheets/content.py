@@ -85,7 +85,7 @@ def gauge_page(result: CheckResult, gauge: GaugeFound) -> GaugePage:
         ),
         spell_head=("Spell", "From – until", "Flow at the tap", f"Reads, {unit}", "Expected", "± U", "Off by"),
         spells=tuple(_spell_row(result, gauge, spell, said) for spell, said in _paired(result, gauge)),
-        findings=_findings(result, tuple(result.causes[i] for i in (*gauge.causes, *gauge.given))),
+        findings=_told(tuple(result.causes[i] for i in (*gauge.causes, *gauge.given))),
     )
 
 
@@ -127,8 +127,7 @@ def spell_rows(result: CheckResult) -> Rows:
 
 def findings(result: CheckResult) -> tuple[tuple[str, str], ...]:
     """Every finding worth telling: probability and label, and its sentence."""
-    told, rest = told_causes(result.causes)
-    return (*_findings(result, told), *((("", rest),) if rest else ()))
+    return _told(result.causes)
 
 
 def input_lines(result: CheckResult) -> tuple[str, ...]:
@@ -154,11 +153,11 @@ def made_by(result: CheckResult) -> str:
     return f"headledger {__version__}, inputs {fingerprint(result)[:16]}"
 
 
-def _findings(result: CheckResult, causes: tuple[CauseFound, ...]) -> tuple[tuple[str, str], ...]:
-    return tuple(
-        (f"{percent(cause.probability)}  {cause_label(cause)}{' (accepted)' if cause.accepted else ''}", cause.says)
-        for cause in causes
-    )
+def _told(causes: tuple[CauseFound, ...]) -> tuple[tuple[str, str], ...]:
+    told, rest = told_causes(causes)
+    labels = (f"{percent(c.probability)}  {cause_label(c)}{' (accepted)' if c.accepted else ''}" for c in told)
+    sentences = tuple((label, cause.says) for label, cause in zip(labels, told, strict=True))
+    return (*sentences, ("", rest)) if rest else sentences
 
 
 def _paired(result: CheckResult, gauge: GaugeFound) -> tuple[tuple[SpellFound, GaugeSpell], ...]:

@@ -186,10 +186,13 @@ def tick_step(extent: float, most: int) -> float:
 
 
 def ticks(low: float, high: float, most: int) -> tuple[float, ...]:
-    """Round values from `low` to `high`, at most `most` + 1 of them."""
-    step = tick_step(high - low, most)
-    first, last = math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9)
-    return tuple(count * step for count in range(first, last + 1))
+    """Round values from `low` to `high`, at least one, and no more than `most` + 1 where a round step allows it."""
+    while True:
+        step = tick_step(high - low, most)
+        first, last = math.ceil(low / step - 1e-9), math.floor(high / step + 1e-9)
+        if first <= last:
+            return tuple(count * step for count in range(first, last + 1))
+        most += 1
 
 
 def tick_labels(values: tuple[float, ...]) -> tuple[str, ...]:

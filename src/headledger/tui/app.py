@@ -17,7 +17,7 @@ from headledger.tui.ending import Ending
 from headledger.tui.messages import CheckEnded, CheckFinished, CheckProgress
 from headledger.tui.screens.ended import EndedScreen
 from headledger.tui.screens.working import WorkingScreen
-from headledger.tui.theme import DARK_THEME, LIGHT_THEME
+from headledger.tui.theme import DARK_THEME, LIGHT_THEME, OTHER_THEMES_VARIABLES
 
 if TYPE_CHECKING:
     from headledger.diagnosis.result import CheckResult
@@ -76,6 +76,10 @@ class HeadledgerApp(App[None]):
         self.theme = DARK_THEME.name
         if self.no_color:
             self._drop_terminal_themes()
+
+    def get_theme_variable_defaults(self) -> dict[str, str]:
+        """Variables of our own for themes that are not ours."""
+        return OTHER_THEMES_VARIABLES
 
     def _drop_terminal_themes(self) -> None:
         """Without colour the themes that take the terminal's own colours write black on black."""

@@ -4,6 +4,9 @@ from __future__ import annotations
 
 from textual.theme import Theme
 
+OTHER_THEMES_VARIABLES = {"pipe-ground": "#7F7F7F"}
+"""What themes that are not ours lack: a grey that stands out from black and from white."""
+
 DARK_THEME = Theme(
     name="headledger-dark",
     dark=True,
@@ -21,6 +24,7 @@ DARK_THEME = Theme(
         "text-success": "#56B4E9",
         "text-warning": "#E69F00",
         "text-error": "#FF7A1F",
+        "pipe-ground": "#3D4650",
         "footer-key-foreground": "#E69F00",
         "block-cursor-background": "#2F5D7C",
         "block-cursor-foreground": "#FFFFFF",
@@ -35,7 +39,7 @@ LIGHT_THEME = Theme(
     dark=False,
     primary="#0072B2",
     secondary="#009E73",
-    accent="#CC79A7",
+    accent="#96306A",
     warning="#8A5A00",
     error="#B34A00",
     success="#0072B2",
@@ -47,6 +51,7 @@ LIGHT_THEME = Theme(
         "text-success": "#005F94",
         "text-warning": "#7A5000",
         "text-error": "#A34300",
+        "pipe-ground": "#C9D1D8",
         "footer-key-foreground": "#7A5000",
         "block-cursor-background": "#BFDDF0",
         "block-cursor-foreground": "#000000",
