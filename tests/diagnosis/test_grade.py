@@ -46,8 +46,8 @@ def _squared_errors(model, linear, posterior, residuals, truths, shared, index):
     groups = tuple(replace(group, residual=residual) for group, residual in zip(linear.groups, residuals, strict=True))
     drawn = replace(linear, groups=groups, white=whiten(groups))
     explanation = Explanation(chosen=(), frame=make_frame(drawn, []), log_weight=0.0)
-    found = station_heads(model, explanation, index)
-    by_own, by_shared = _head_derivatives(model, explanation, index)
+    found = station_heads(model, explanation.frame, (), index)
+    by_own, by_shared = _head_derivatives(model, explanation.frame.linear, index)
     own, state = truths[index]
     truth = state.head_m + by_own @ own + by_shared @ shared
     return ((found.head_m - truth) / found.sd_m) ** 2
@@ -61,7 +61,7 @@ def test_grade_of_a_blockage_falls_by_what_it_takes() -> None:
     assert [(mark.kind.value, mark.place.run) for mark in marks] == [("blockage", "R2")]
     keys = [mark.key for mark in marks]
     for index, spell in enumerate(model.spells):
-        grades = run_grades(model, posterior.leading, index, keys)
+        grades = run_grades(model, posterior.leading.frame, posterior.leading.chosen, index, keys)
         if spell.is_still:
             assert all(abs(grade.start_m - grade.end_m) < 1e-9 and not grade.steps for grade in grades)
             continue
@@ -75,11 +75,11 @@ def test_tap_head_of_a_perfect_reading_is_the_grade_line_there() -> None:
     model = worked_model(REFERENCE["sound"]["readings_kpa"])
     posterior = search(model, kinds=())
     layout = model.layout
-    for index, state in enumerate(posterior.leading.frame.linear.states):
+    for state in posterior.leading.frame.linear.states:
         for gauge, noun in enumerate(layout.job.gauges):
             station, run = layout.station_index[noun.station], layout.run_index[noun.run]
             velocity_m = state.velocity_pa[run] / state.head_weight_pa_m
-            found = tap_head_m(model, posterior.leading, index, gauge, float(state.reading_pa[gauge]))
+            found = tap_head_m(model, state, gauge, float(state.reading_pa[gauge]))
             assert found == pytest.approx(float(state.head_m[station] - velocity_m), abs=1e-9)
 
 
@@ -87,10 +87,10 @@ def test_station_heads_do_not_depend_on_where_the_model_was_linearised() -> None
     """Half a metre off, the same readings give the same heads; a calibration curve taken there moves them by micrometres."""
     model = worked_model(REFERENCE["sound"]["readings_kpa"])
     posterior = search(model, kinds=())
-    there = station_heads(model, posterior.leading, 0)
+    there = station_heads(model, posterior.leading.frame, (), 0)
     points = [
         Point(reference_head_m=state.point.reference_head_m + 0.5, flow_m3_s=state.point.flow_m3_s)
         for state in posterior.leading.frame.linear.states
     ]
     moved = search(Model(model.layout, model.spells), kinds=(), points=points)
-    assert station_heads(model, moved.leading, 0).head_m == pytest.approx(there.head_m, abs=5e-5)
+    assert station_heads(model, moved.leading.frame, (), 0).head_m == pytest.approx(there.head_m, abs=5e-5)

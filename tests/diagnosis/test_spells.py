@@ -38,6 +38,7 @@ def timeline(readings_pa: Array, flow_m3_s: Array, width_s: float = 2.0) -> Time
         flow_count=np.isfinite(flows).astype(np.int64),
         flow_variance=np.zeros_like(flows),
         level_m=np.full((blocks, 4), np.nan),
+        run_temperature_k=np.full((blocks, 3), np.nan),
         temperature_k=np.full(blocks, np.nan),
         speed_ratio=np.full((blocks, 3), np.nan),
         open_fraction=np.full((blocks, 3), np.nan),

@@ -205,6 +205,7 @@ def _means(
         temperature_k=temperature if np.isfinite(temperature) else job.liquid.temperature_k,
         speed_ratio=_speeds(layout, timeline, cut, still),
         is_open=_states(layout, timeline, cut),
+        run_temperature_k=_run_temperatures(layout, timeline, cut),
     )
 
 
@@ -234,6 +235,14 @@ def _speeds(layout: Layout, timeline: Timeline, cut: slice, still: bool) -> Arra
     pump = np.array([run.is_pump for run in layout.job.runs])
     assumed = np.where(pump, 0.0 if still else 1.0, 0.0)
     return np.asarray(np.where(pump & np.isfinite(measured), measured, assumed))
+
+
+def _run_temperatures(layout: Layout, timeline: Timeline, cut: slice) -> Array | None:
+    """Temperatures of runs that have one of their own, logged or stated; None where no run has. [K]"""
+    stated = np.array([np.nan if run.temperature_k is None else run.temperature_k for run in layout.job.runs])
+    measured = _mean(timeline.run_temperature_k[cut])
+    own = np.where(np.isfinite(measured), measured, stated)
+    return own if np.isfinite(own).any() else None
 
 
 def _states(layout: Layout, timeline: Timeline, cut: slice) -> tuple[bool, ...]:

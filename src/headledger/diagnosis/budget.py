@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from enum import StrEnum
 from math import sqrt
 
@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from headledger.diagnosis.layout import Layout, liquid_at, still_liquid_k
 from headledger.diagnosis.means import SpellMeans
-from headledger.diagnosis.state import Applied, State, evaluate
+from headledger.diagnosis.state import Applied, LiquidShift, State, evaluate
 from headledger.plant.gauges import Gauge
 
 Array = NDArray[np.float64]
@@ -96,6 +96,9 @@ def uncertain_inputs(layout: Layout) -> tuple[UncertainInput, ...]:
         found[InputKind.METER, run.name] = 1.0
     found[InputKind.DENSITY, ""] = job.liquid.density_sd_fraction
     found[InputKind.TEMPERATURE, ""] = job.liquid.temperature_sd_k
+    for run in job.runs:
+        if run.temperature_k is not None or run.temperature_column:
+            found[InputKind.TEMPERATURE, run.name] = job.liquid.temperature_sd_k
     found[InputKind.BAROMETER, ""] = job.site.barometer_sd_pa
     if job.site.ambient_k is not None:
         found[InputKind.AMBIENT, ""] = job.site.ambient_sd_k
@@ -228,16 +231,24 @@ def _ambient_mark(layout: Layout) -> Array:
 def _liquid_mark(
     layout: Layout, spell: SpellMeans, state: State, applied: Applied | None, item: UncertainInput
 ) -> tuple[Array, Array]:
-    """Change of readings and drops for one standard deviation of density or of temperature, by a central difference."""
-    liquid = liquid_at(layout.job.liquid, spell.temperature_k)
-    moved = []
-    sides_k = [still_liquid_k(layout.job.liquid, spell.temperature_k + side * item.sd) for side in (-0.5, 0.5)]
-    for side, side_k in zip((-0.5, 0.5), sides_k, strict=True):
-        if item.kind is InputKind.DENSITY:
-            changed = replace(liquid, density_kg_m3=float(liquid.density_kg_m3) * (1.0 + side * item.sd))
-        else:
-            changed = liquid_at(layout.job.liquid, side_k)
-        moved.append(evaluate(layout, spell, state.point, applied=applied, liquid=changed))
-    # one side may have stopped at the freezing point: the slope found over what is left holds for the whole step
-    whole = item.sd / (sides_k[1] - sides_k[0]) if item.kind is InputKind.TEMPERATURE and item.sd else 1.0
-    return whole * (moved[1].reading_pa - moved[0].reading_pa), whole * (moved[1].drop_m - moved[0].drop_m)
+    """Change of readings and drops for one standard deviation of density or of a temperature, by a central difference."""
+    sides = (-0.5, 0.5)
+    if item.kind is InputKind.DENSITY:
+        shifts = [LiquidShift(density_ratio=1.0 + side * item.sd) for side in sides]
+        whole = 1.0
+    else:
+        run = layout.run_index[item.owner] if item.owner else -1
+        around_k = _temperature_k(spell, run)
+        # at the freezing point one side stops there: the slope found over what is left holds for the whole step
+        moves = [still_liquid_k(layout.job.liquid, around_k + side * item.sd) - around_k for side in sides]
+        shifts = [LiquidShift(temperature_k=k) if run < 0 else LiquidShift(run_k=((run, k),)) for k in moves]
+        whole = item.sd / (moves[1] - moves[0])
+    low, high = (evaluate(layout, spell, state.point, applied=applied, shift=shift) for shift in shifts)
+    drops = (high.drop_m + high.column_m) - (low.drop_m + low.column_m)
+    return whole * (high.reading_pa - low.reading_pa), whole * drops
+
+
+def _temperature_k(spell: SpellMeans, run: int) -> float:
+    """Temperature of the job's liquid, or of a run's own; the job's where the run has none in this spell. [K]"""
+    own = np.nan if spell.run_temperature_k is None or run < 0 else float(spell.run_temperature_k[run])
+    return own if np.isfinite(own) else spell.temperature_k

@@ -172,7 +172,9 @@ def _spell(model: Model, posterior: Posterior, findings: Sequence[Finding], inde
             FlowFound(run=run.name, flow_m3_s=float(flow), u95_m3_s=2.0 * float(sd))
             for run, flow, sd in zip(model.layout.job.runs, flows, deviation, strict=True)
         ),
-        grade=run_grades(model, posterior.leading, index, [(f.kind, f.place) for f in findings]),
+        grade=run_grades(
+            model, posterior.leading.frame, posterior.leading.chosen, index, [(f.kind, f.place) for f in findings]
+        ),
     )
 
 
@@ -217,11 +219,8 @@ def _gauge_spells(
         value = u95 = None
         if expected is not None and index in said and judged.verdict is not Verdict.UNCHECKED:
             value, u95 = float(expected.value_pa[said[index]]), 2.0 * float(expected.sd_pa[said[index]])
-        heads = [
-            None if not has_head or pa is None else tap_head_m(model, posterior.leading, index, gauge, pa)
-            for pa in (reading, value)
-        ]
-        weight = posterior.leading.frame.linear.states[index].head_weight_pa_m
+        state = posterior.leading.frame.linear.states[index]
+        heads = [None if not has_head or pa is None else tap_head_m(model, state, gauge, pa) for pa in (reading, value)]
         rows.append(
             GaugeSpell(
                 id=spell.id,
@@ -230,7 +229,7 @@ def _gauge_spells(
                 u95_pa=u95,
                 head_m=heads[0],
                 expected_head_m=heads[1],
-                head_u95_m=None if u95 is None or heads[1] is None else u95 / weight,
+                head_u95_m=None if u95 is None or heads[1] is None else u95 / state.head_weight_pa_m,
             )
         )
     return tuple(rows)

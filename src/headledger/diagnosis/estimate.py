@@ -206,7 +206,7 @@ class Model:
             self._add_levels(spell, state, place, (residual, noise, own, shared), own_flow_marks, drop_marks)
         if place.loops:
             loop = state.graph.loop
-            residual.append(-loop @ state.drop_m)
+            residual.append(-loop @ (state.drop_m + state.column_m))
             noise.append(np.full(place.loops, LOOP_NOISE_M))
             slopes = loop @ drop_from_flow
             own.append(np.hstack([np.zeros((place.loops, state.graph.parts)), slopes]))
@@ -375,17 +375,20 @@ def cut_off_sections(layout: Layout, spell: SpellMeans) -> dict[int, str]:
     dict of int to str
         Parts without exchange or pump beside a larger one; named by their stations.
     """
-    graph = spell_graph(layout, spell)
-    if graph.parts < 2:
+    # what a loss of unknown size parts has no head of its own: it follows, only by an unknown amount
+    piped, graph = layout.graph(spell.is_open), spell_graph(layout, spell)
+    if piped.parts < 2:
         return {}
-    sizes = np.bincount(graph.part, minlength=graph.parts)
+    sizes = np.bincount(piped.part, minlength=piped.parts)
     largest = int(np.argmax(sizes))
-    driven = {int(graph.part[layout.ends[run][0]]) for run in layout.pumps}
+    driven = {int(piped.part[layout.ends[run][0]]) for run in layout.pumps}
     found = {}
-    for part in range(graph.parts):
-        members = np.flatnonzero(graph.part == part)
-        if part != largest and part not in driven and not any(layout.exchanges[int(s)] for s in members):
-            found[part] = " ".join(layout.job.stations[int(s)].name for s in members)
+    for part in range(piped.parts):
+        members = np.flatnonzero(piped.part == part)
+        alone = np.unique(graph.part[members])
+        exchanges = any(layout.exchanges[int(s)] for s in members)
+        if part != largest and part not in driven and not exchanges and alone.size == 1:
+            found[int(alone[0])] = " ".join(layout.job.stations[int(s)].name for s in members)
     return found
 
 

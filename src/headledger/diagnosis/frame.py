@@ -13,7 +13,7 @@ from headledger.diagnosis.causes.base import Mark, View
 from headledger.diagnosis.estimate import Linear, Model
 from headledger.diagnosis.means import SpellMeans
 from headledger.diagnosis.result import CauseKind, Place
-from headledger.diagnosis.state import Applied, Point
+from headledger.diagnosis.state import Applied, Point, spell_graph
 from headledger.statistics.sizes import NODES, SizePosterior, SizePriors, log_gain, size_posterior
 
 Array = NDArray[np.float64]
@@ -233,7 +233,7 @@ def _rescaled(model: Model, points: Sequence[Point], applied: Applied) -> tuple[
     for spell, point in zip(model.spells, points, strict=True):
         flows = point.flow_m3_s.copy()
         if flows.size:
-            basis = model.layout.graph(spell.is_open).basis
+            basis = spell_graph(model.layout, spell).basis
             for column, run in enumerate(basis):
                 if int(run) in applied.meter_ratio and np.isfinite(spell.flow_m3_s[run]):
                     flows[column] = spell.flow_m3_s[run] / applied.meter_ratio[int(run)]

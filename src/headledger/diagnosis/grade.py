@@ -13,9 +13,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from headledger.diagnosis.budget import InputKind, input_marks
-from headledger.diagnosis.estimate import Model, cut_off_sections
+from headledger.diagnosis.estimate import Linear, Model, cut_off_sections
+from headledger.diagnosis.frame import Frame
 from headledger.diagnosis.result import CauseKind, GradeStep, Place, RunGrade
-from headledger.diagnosis.search import Explanation
+from headledger.diagnosis.state import State
 from headledger.statistics.gaussian import Group, own_estimate
 
 Array = NDArray[np.float64]
@@ -27,24 +28,33 @@ class StationHeads:
 
     Parameters
     ----------
-    head_m, sd_m : ndarray, shape (stations,)
+    head_m : ndarray, shape (stations,)
         [m]
+    covariance_m2 : ndarray, shape (stations, stations)
+        [m²]
     drop_m : dict of int to ndarray, shape (runs,)
         Head that each of the explanation's marks takes in every run. [m]
     """
 
     head_m: Array
-    sd_m: Array
+    covariance_m2: Array
     drop_m: dict[int, Array]
 
+    @property
+    def sd_m(self) -> Array:
+        """Standard deviation of each head. [m]"""
+        return np.asarray(np.sqrt(np.maximum(np.diag(self.covariance_m2), 0.0)))
 
-def station_heads(model: Model, explanation: Explanation, index: int) -> StationHeads:
-    """Total heads at every station in one spell, predicted from all readings.
+
+def station_heads(model: Model, frame: Frame, chosen: Sequence[int], index: int) -> StationHeads:
+    """Total heads at every station in one spell, predicted from all readings under one explanation.
 
     Parameters
     ----------
     model : Model
-    explanation : Explanation
+    frame : Frame
+    chosen : sequence of int
+        The explanation's marks in the frame.
     index : int
         Of the spell.
 
@@ -57,12 +67,11 @@ def station_heads(model: Model, explanation: Explanation, index: int) -> Station
     With the own unknowns ``x``, the shared inputs ``t`` and the sizes ``s`` of the explanation's marks, a head is
     ``E = E₀ + H x + B t + D s``; the moments of ``x`` given ``t`` and ``s``, and of ``t`` given ``s``, follow from the data.
     """
-    frame = explanation.frame
     linear, white = frame.linear, frame.linear.white
     state, group, place = linear.states[index], linear.groups[index], linear.rows[index]
-    own, shared = _head_derivatives(model, explanation, index)
-    marks = [frame.marks[i] for i in explanation.chosen]
-    sizes = [frame.size(explanation.chosen, i) for i in explanation.chosen]
+    own, shared = _head_derivatives(model, linear, index)
+    marks = [frame.marks[i] for i in chosen]
+    sizes = [frame.size(chosen, i) for i in chosen]
     cut = slice(place.start, place.start + place.count)
     whole = np.array([mark.vector for mark in marks]).reshape(len(marks), linear.row_count)
     mean_size = np.array([size.mean for size in sizes])
@@ -86,7 +95,7 @@ def station_heads(model: Model, explanation: Explanation, index: int) -> Station
         shared_shift = -white.shared.T @ (white.operator @ whole[column])
         moved = by_size[:, column] - own @ own_by_rows @ whole[column, cut] + moved_by_shared @ shared_shift
         covariance = covariance + size.sd**2 * np.outer(moved, moved)
-    return StationHeads(head_m=head, sd_m=np.sqrt(np.maximum(np.diag(covariance), 0.0)), drop_m=drops)
+    return StationHeads(head_m=head, covariance_m2=covariance, drop_m=drops)
 
 
 def _with_residual(group: Group, residual: Array) -> Group:
@@ -110,9 +119,8 @@ def _own_moments(group: Group) -> tuple[Array, Array]:
     return covariance, covariance @ weighted.T / group.noise_sd
 
 
-def _head_derivatives(model: Model, explanation: Explanation, index: int) -> tuple[Array, Array]:
+def _head_derivatives(model: Model, linear: Linear, index: int) -> tuple[Array, Array]:
     """Derivatives of a spell's heads with its own unknowns and with the shared inputs."""
-    linear = explanation.frame.linear
     spell, state = model.spells[index], linear.states[index]
     graph = state.graph
     member = np.zeros((state.head_m.size, graph.parts))
@@ -129,14 +137,15 @@ def _head_derivatives(model: Model, explanation: Explanation, index: int) -> tup
 
 
 def run_grades(
-    model: Model, explanation: Explanation, index: int, causes: Sequence[tuple[CauseKind, Place]]
+    model: Model, frame: Frame, chosen: Sequence[int], index: int, causes: Sequence[tuple[CauseKind, Place]]
 ) -> tuple[RunGrade, ...]:
     """The grade line along every run in one spell.
 
     Parameters
     ----------
     model : Model
-    explanation : Explanation
+    frame : Frame
+    chosen : sequence of int
     index : int
         Of the spell.
     causes : sequence of (CauseKind, Place)
@@ -147,10 +156,10 @@ def run_grades(
     tuple of RunGrade
     """
     layout, spell = model.layout, model.spells[index]
-    state = explanation.frame.linear.states[index]
-    heads = station_heads(model, explanation, index)
+    state = frame.linear.states[index]
+    heads = station_heads(model, frame, chosen, index)
     number = {key: at for at, key in enumerate(causes)}
-    keys = [explanation.frame.marks[i].key for i in explanation.chosen]
+    keys = [frame.marks[i].key for i in chosen]
     found = []
     for run, noun in enumerate(layout.job.runs):
         start, end = layout.ends[run]
@@ -174,15 +183,16 @@ def run_grades(
     return tuple(found)
 
 
-def tap_head_m(model: Model, explanation: Explanation, index: int, gauge: int, reading_pa: float) -> float:
+def tap_head_m(model: Model, state: State, gauge: int, reading_pa: float) -> float:
     """Head of the grade line at a gauge's tap for which a perfect instrument would read this. [m]
 
     Parameters
     ----------
     model : Model
-    explanation : Explanation
-    index, gauge : int
-        Of the spell; of a gauge with one tap.
+    state : State
+        Of the spell.
+    gauge : int
+        One with one tap.
     reading_pa : float
         In the gauge's own reference. [Pa]
 
@@ -190,6 +200,10 @@ def tap_head_m(model: Model, explanation: Explanation, index: int, gauge: int, r
     -----
     Of the energy line the reading lacks the velocity head, as the grade line does: ``(p - c) / (ρ g) + z``.
     """
-    taps = model.layout.taps
-    weight = explanation.frame.linear.states[index].head_weight_pa_m
-    return float((reading_pa - taps.constant_pa[gauge]) / weight + taps.column_m[gauge])
+    layout = model.layout
+    run = int(layout.tap_run[gauge])
+    heavier = 0.0 if run < 0 else float(state.run_density_kg_m3[run]) - state.density_kg_m3
+    leg_pa = heavier * layout.gravity_m_s2 * layout.process_leg_m[gauge]
+    return float(
+        (reading_pa - layout.taps.constant_pa[gauge] - leg_pa) / state.head_weight_pa_m + layout.taps.column_m[gauge]
+    )

@@ -15,7 +15,7 @@ from headledger.physics.network import Graph, build_graph
 from headledger.physics.tapping import AIR_WEIGHT_PA_M, Taps
 from headledger.plant.gauges import Gauge, LegFill
 from headledger.plant.job import Job, LiquidSpec
-from headledger.plant.runs import Run
+from headledger.plant.runs import LossKind, Run
 from headledger.plant.stations import Exchange, StationKind
 from headledger.quantities import PressureKind
 
@@ -103,8 +103,8 @@ class Layout:
         self.ends = tuple((self.station_index[run.start], self.station_index[run.end]) for run in job.runs)
         self.area_m2: Array = np.array([run.area_m2 for run in job.runs])
         self.gravity_m_s2 = float(gravity_m_s2(job.site.latitude_deg, job.site.datum_altitude_m))
-        self._graphs: dict[tuple[bool, ...], Graph] = {}
-        self._tables: dict[tuple[float, float], LossTable] = {}
+        self._graphs: dict[tuple[tuple[bool, ...], tuple[bool, ...]], Graph] = {}
+        self._tables: dict[tuple[bytes, bytes], LossTable] = {}
 
     @property
     def gauge_count(self) -> int:
@@ -158,29 +158,69 @@ class Layout:
 
         return tuple(sorted(range(self.run_count), key=rank))
 
-    def graph(self, is_open: tuple[bool, ...]) -> Graph:
-        """The piping graph in one state of its valves."""
-        if is_open not in self._graphs:
-            self._graphs[is_open] = build_graph(
+    def ties(self, is_open: tuple[bool, ...], *, still: bool) -> tuple[bool, ...]:
+        """Which runs tie the heads of their ends.
+
+        Not those that are shut, nor a loss that is free; nor, while liquid moves, a pump without a curve; nor, at rest, a check
+        valve, which may hold a higher head on its `end` side.
+        """
+        return tuple(
+            opened
+            and run.loss is not LossKind.FREE
+            and not (run.lifts_unknown and not still)
+            and not (run.is_check_valve and still)
+            for run, opened in zip(self.job.runs, is_open, strict=True)
+        )
+
+    def graph(self, is_open: tuple[bool, ...], ties: tuple[bool, ...] | None = None) -> Graph:
+        """The piping graph in one state of its valves; `ties` as of `ties`, all open runs by default."""
+        key = (is_open, is_open if ties is None else ties)
+        if key not in self._graphs:
+            self._graphs[key] = build_graph(
                 len(self.job.stations),
                 self.ends,
                 is_open=is_open,
                 exchanges=self.exchanges,
                 preference=self.preference,
+                ties=key[1],
             )
-        return self._graphs[is_open]
+        return self._graphs[key]
 
-    def loss_table(self, liquid: LiquidProperties) -> LossTable:
-        """Losses of all runs with one liquid."""
-        key = (float(liquid.density_kg_m3), float(liquid.viscosity_pa_s))
+    def loss_table(self, density_kg_m3: Array, viscosity_pa_s: Array) -> LossTable:
+        """Losses of all runs, each with its own liquid; arguments of shape (runs,). [kg/m³], [Pa s]"""
+        key = (density_kg_m3.tobytes(), viscosity_pa_s.tobytes())
         if key not in self._tables:
             self._tables[key] = LossTable(
                 [run_loss(run) for run in self.job.runs],
-                density_kg_m3=key[0],
-                viscosity_pa_s=key[1],
+                density_kg_m3=density_kg_m3,
+                viscosity_pa_s=viscosity_pa_s,
                 gravity_m_s2=self.gravity_m_s2,
             )
         return self._tables[key]
+
+    @cached_property
+    def fall_m(self) -> Array:
+        """How far each run falls from its start to its end. [m]"""
+        height = self.station_elevation_m
+        return np.array([height[start] - height[end] for start, end in self.ends]).reshape(self.run_count)
+
+    @cached_property
+    def process_leg_m(self) -> Array:
+        """Height of each gauge's column of flowing liquid, from where it reads up to its tap, shape (gauges,). [m]"""
+        return np.array([self._process_leg(gauge) for gauge in self.job.gauges])
+
+    def _process_leg(self, gauge: Gauge) -> float:
+        """The same of one gauge; 0 for a leg of another fill, and where it reads at its tap. [m]"""
+        reads_at_m = gauge.elevation_m if gauge.corrected_to_m is None else gauge.corrected_to_m
+        other_fill = gauge.corrected_to_m is None and self.leg_density_kg_m3(gauge) is not None
+        if reads_at_m is None or gauge.is_differential or gauge.corrected_to_tap or other_fill:
+            return 0.0
+        return self.job.station(gauge.station).elevation_m - reads_at_m
+
+    @cached_property
+    def tap_run(self) -> NDArray[np.int64]:
+        """The run on whose bore each gauge's (high) tap sits, −1 where it has none, shape (gauges,)."""
+        return np.array([self.run_index.get(gauge.run, -1) for gauge in self.job.gauges], dtype=np.int64)
 
     @cached_property
     def ambient_leg_density_kg_m3(self) -> float | None:

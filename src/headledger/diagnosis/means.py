@@ -37,6 +37,8 @@ class SpellMeans:
     speed_ratio : ndarray, shape (runs,)
         Of pumps; 0 elsewhere. [-]
     is_open : tuple of bool, length runs
+    run_temperature_k : ndarray, shape (runs,), optional
+        Of runs whose liquid has a temperature of its own, nan elsewhere. [K]
     """
 
     id: int
@@ -55,6 +57,7 @@ class SpellMeans:
     temperature_k: float
     speed_ratio: Array
     is_open: tuple[bool, ...]
+    run_temperature_k: Array | None = None
 
     @property
     def is_still(self) -> bool:

@@ -12,7 +12,7 @@ from headledger.diagnosis.layout import Layout, liquid_at, liquid_limits_k
 from headledger.errors import JobError, Problem, QuantityError
 from headledger.plant.digest import Digest, common_grid
 from headledger.plant.gauges import Gauge, Signal
-from headledger.plant.job import Job
+from headledger.plant.job import Job, LiquidSpec
 from headledger.plant.runs import Run, RunState
 from headledger.quantities import Dimension, PressureKind, Unit, parse_unit
 
@@ -41,6 +41,8 @@ class Timeline:
         Of surfaces with a level column, nan elsewhere. [m]
     temperature_k : ndarray, shape (blocks,)
         nan where the job names no column. [K]
+    run_temperature_k : ndarray, shape (blocks, runs)
+        nan where a run names no column. [K]
     speed_ratio, open_fraction : ndarray, shape (blocks, runs)
         nan where a run has no such column. [-]
     remarks : tuple of str
@@ -58,6 +60,7 @@ class Timeline:
     flow_variance: Array
     level_m: Array
     temperature_k: Array
+    run_temperature_k: Array
     speed_ratio: Array
     open_fraction: Array
     remarks: tuple[str, ...] = ()
@@ -158,7 +161,17 @@ def read_timeline(layout: Layout, digests: Sequence[Digest]) -> Timeline:
         flow_count=flow[1],
         flow_variance=flow[2],
         level_m=_levels(columns, job, remarks),
-        temperature_k=_temperature(columns, job, remarks),
+        temperature_k=_temperature(
+            columns, job.liquid, job.liquid.temperature_column, job.liquid.temperature_unit, "liquid", remarks
+        ),
+        run_temperature_k=np.column_stack(
+            [
+                _temperature(columns, job.liquid, r.temperature_column, r.temperature_unit, r.name, remarks)
+                for r in job.runs
+            ]
+        )
+        if job.runs
+        else np.zeros((blocks, 0)),
         speed_ratio=speed,
         open_fraction=opened,
         remarks=tuple(remarks),
@@ -295,21 +308,23 @@ def _levels(columns: _Columns, job: Job, remarks: list[str]) -> Array:
     return levels
 
 
-def _temperature(columns: _Columns, job: Job, remarks: list[str]) -> Array:
-    """Measured temperature of the liquid. [K]"""
-    column = columns.get(job.liquid.temperature_column)
-    if job.liquid.temperature_column and column is None:
-        remarks.append(f"liquid: no log has a column {job.liquid.temperature_column!r} for its temperature.")
-    if column is None or job.liquid.temperature_unit is None:
+def _temperature(
+    columns: _Columns, liquid: LiquidSpec, name: str | None, own: Unit | None, what: str, remarks: list[str]
+) -> Array:
+    """Measured temperature of the liquid, everywhere or in one run. [K]"""
+    column = columns.get(name)
+    if name and column is None:
+        remarks.append(f"{what}: no log has a column {name!r} for its temperature.")
+    if column is None or own is None:
         return np.full(columns.index.size, np.nan)
-    unit = _logged_unit(column, job.liquid.temperature_unit, "temperature of the liquid", remarks, None)
+    unit = _logged_unit(column, own, f"temperature of {what}", remarks, None)
     logged_k = column.mean * unit.factor + unit.offset
-    low_k, high_k = liquid_limits_k(job.liquid)
+    low_k, high_k = liquid_limits_k(liquid)
     # a sensor that fell off says nothing of the liquid
     outside = (logged_k < low_k) | (logged_k > high_k)
     if outside.any():
         remarks.append(
-            f"liquid: {int(outside.sum())} of {int(np.isfinite(logged_k).sum())} blocks of its logged temperature lie outside "
-            f"{low_k - 273.15:.1f} to {high_k - 273.15:.1f} °C, where it is known; they were left aside."
+            f"{what}: {int(outside.sum())} of {int(np.isfinite(logged_k).sum())} blocks of its logged temperature lie outside "
+            f"{low_k - 273.15:.1f} to {high_k - 273.15:.1f} °C, where the liquid is known; they were left aside."
         )
     return np.asarray(np.where(outside, np.nan, logged_k))

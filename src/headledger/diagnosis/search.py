@@ -8,7 +8,7 @@ other, until nothing within reach is left.
 from __future__ import annotations
 
 from collections.abc import Callable, Collection, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from headledger.diagnosis.causes.base import View
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.frame import Frame, all_marks, make_frame, own_frame
+from headledger.diagnosis.one_sided import sign_log_weight
 from headledger.diagnosis.priors import CountPrior, mark_shares
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.diagnosis.starting import first_points
@@ -294,7 +295,10 @@ def _at_own_solutions(
                 - base.log_evidence_of_none
                 + frame.log_gain(chosen)
                 + set_log_prior(shares, prior, e.chosen)
+                + sign_log_weight(model, frame, chosen)
             )
             e = Explanation(chosen=chosen, frame=frame, log_weight=weight)
+        elif not e.chosen:
+            e = replace(e, log_weight=e.log_weight + sign_log_weight(model, e.frame, ()))
         out.append(e)
     return out

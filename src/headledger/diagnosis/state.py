@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 import numpy as np
 from numpy.typing import NDArray
 
-from headledger.diagnosis.layout import Layout, liquid_at
+from headledger.diagnosis.layout import Layout, liquid_at, still_liquid_k
 from headledger.diagnosis.means import SpellMeans
 from headledger.physics.liquids import LiquidProperties
 from headledger.physics.losses import pump_head
@@ -52,6 +52,42 @@ class Applied:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class LiquidShift:
+    """A change of the liquid, for derivatives.
+
+    Parameters
+    ----------
+    density_ratio : float
+        On every density. [-]
+    temperature_k : float
+        On the job's liquid, which fills all runs without a temperature of their own. [K]
+    run_k : tuple of (int, float)
+        On runs with a temperature of their own. [K]
+    """
+
+    density_ratio: float = 1.0
+    temperature_k: float = 0.0
+    run_k: tuple[tuple[int, float], ...] = ()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SpellLiquid:
+    """The liquid of one spell: the job's, in which heads are counted, and that of every run.
+
+    Parameters
+    ----------
+    density_kg_m3 : float
+        [kg/m³]
+    run_density_kg_m3, run_viscosity_pa_s : ndarray, shape (runs,)
+        [kg/m³], [Pa s]
+    """
+
+    density_kg_m3: float
+    run_density_kg_m3: Array
+    run_viscosity_pa_s: Array
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class State:
     """A spell's hydraulics at a point.
 
@@ -63,11 +99,15 @@ class State:
         Flows of all runs from the independent ones; no columns in a still spell.
     flow_m3_s, drop_m, slope_s_m2, velocity_pa : ndarray, shape (runs,)
         Flow; head lost (a pump's lift is negative); its derivative with flow; velocity pressure. [m³/s], [m], [s/m²], [Pa]
+    column_m : ndarray, shape (runs,)
+        Head that a run's own liquid, lighter or heavier than the job's, takes over its fall. [m]
     head_m : ndarray, shape (stations,)
-        [m]
+        Of the job's liquid. [m]
     reading_pa : ndarray, shape (gauges,)
         Of perfect instruments. [Pa]
     density_kg_m3 : float
+        Of the job's liquid. [kg/m³]
+    run_density_kg_m3 : ndarray, shape (runs,)
         [kg/m³]
     head_weight_pa_m : float
         ρ g, what a metre of head weighs. [Pa/m]
@@ -80,15 +120,17 @@ class State:
     drop_m: Array
     slope_s_m2: Array
     velocity_pa: Array
+    column_m: Array
     head_m: Array
     reading_pa: Array
     density_kg_m3: float
+    run_density_kg_m3: Array
     head_weight_pa_m: float
 
     def reading_from_flow(self, layout: Layout) -> Array:
         """Derivative of the readings with the independent flows, shape (gauges, independent). [Pa s/m³]"""
         heads = -self.graph.path @ (self.slope_s_m2[:, None] * self.basis)
-        moving = self.density_kg_m3 * (self.flow_m3_s / layout.area_m2**2)[:, None] * self.basis
+        moving = (self.run_density_kg_m3 * self.flow_m3_s / layout.area_m2**2)[:, None] * self.basis
         return np.asarray(self.head_weight_pa_m * (layout.taps.head @ heads) - layout.taps.velocity @ moving)
 
     def reading_from_drop(self, layout: Layout) -> Array:
@@ -103,8 +145,42 @@ class State:
 
 
 def spell_graph(layout: Layout, spell: SpellMeans) -> Graph:
-    """The piping graph as its valves stand in a spell."""
-    return layout.graph(spell.is_open)
+    """The piping graph as its valves stand in a spell, its heads tied by runs whose drop is known."""
+    return layout.graph(spell.is_open, layout.ties(spell.is_open, still=spell.is_still))
+
+
+def spell_liquid(layout: Layout, spell: SpellMeans, shift: LiquidShift | None = None) -> SpellLiquid:
+    """The liquid of a spell.
+
+    Parameters
+    ----------
+    layout : Layout
+    spell : SpellMeans
+    shift : LiquidShift, optional
+
+    Returns
+    -------
+    SpellLiquid
+        A temperature shifted beyond what the liquid is known for stops there.
+    """
+    shift, spec = shift or LiquidShift(), layout.job.liquid
+
+    def at(temperature_k: float, more_k: float) -> LiquidProperties:
+        return liquid_at(spec, still_liquid_k(spec, temperature_k + more_k) if more_k else temperature_k)
+
+    own = at(spell.temperature_k, shift.temperature_k)
+    density = np.full(layout.run_count, float(own.density_kg_m3))
+    viscosity = np.full(layout.run_count, float(own.viscosity_pa_s))
+    if spell.run_temperature_k is not None:
+        moved = dict(shift.run_k)
+        for run in np.flatnonzero(np.isfinite(spell.run_temperature_k)):
+            liquid = at(float(spell.run_temperature_k[run]), moved.get(int(run), 0.0))
+            density[run], viscosity[run] = float(liquid.density_kg_m3), float(liquid.viscosity_pa_s)
+    return SpellLiquid(
+        density_kg_m3=float(own.density_kg_m3) * shift.density_ratio,
+        run_density_kg_m3=density * shift.density_ratio,
+        run_viscosity_pa_s=viscosity,
+    )
 
 
 def evaluate(
@@ -113,7 +189,7 @@ def evaluate(
     point: Point,
     *,
     applied: Applied | None = None,
-    liquid: LiquidProperties | None = None,
+    shift: LiquidShift | None = None,
 ) -> State:
     """Hydraulics of a spell at a point.
 
@@ -124,26 +200,38 @@ def evaluate(
     point : Point
     applied : Applied, optional
         Causes to allow for.
-    liquid : LiquidProperties, optional
-        In place of the job's liquid at the spell's temperature.
+    shift : LiquidShift, optional
+        Of the liquid.
 
     Returns
     -------
     State
+
+    Notes
+    -----
+    Heads are metres of the job's liquid, ρ₀. Along a run of another density ρ the energy balance
+    ``p_a + ρ g z_a = p_b + ρ g z_b + ρ g h`` becomes ``E_a − E_b = (ρ/ρ₀) h + (1 − ρ/ρ₀)(z_a − z_b)``.
     """
     graph = spell_graph(layout, spell)
-    liquid = liquid or liquid_at(layout.job.liquid, spell.temperature_k)
-    density = float(liquid.density_kg_m3) * (applied.density_ratio if applied else 1.0)
+    liquid = spell_liquid(layout, spell, shift)
+    heavier = applied.density_ratio if applied else 1.0
+    density, run_density = liquid.density_kg_m3 * heavier, liquid.run_density_kg_m3 * heavier
+    ratio = run_density / density
     basis = graph.flow[:, : point.flow_m3_s.size]
     flow = basis @ point.flow_m3_s
-    drop, slope = layout.loss_table(liquid).evaluate(flow)
-    drop, slope = np.array(drop), np.array(slope)
+    # what a loss table holds of rated drops is for the liquid at hand, whatever is found out about its density
+    table = layout.loss_table(liquid.run_density_kg_m3, liquid.run_viscosity_pa_s)
+    drop, slope = (ratio * part for part in table.evaluate(flow))
     for run, polynomial in layout.pumps.items():
         lift, lift_slope = pump_head(polynomial, float(flow[run]), float(spell.speed_ratio[run]))
-        drop[run] -= lift
-        slope[run] -= lift_slope
-    head = graph.heads_m(point.reference_head_m, drop)
-    velocity = 0.5 * density * (flow / layout.area_m2) ** 2
+        drop[run] -= ratio[run] * lift
+        slope[run] -= ratio[run] * lift_slope
+    column = (1.0 - ratio) * layout.fall_m
+    head = graph.heads_m(point.reference_head_m, drop + column)
+    velocity = 0.5 * run_density * (flow / layout.area_m2) ** 2
+    readings = layout.taps.readings_pa(head, velocity, density_kg_m3=density, gravity_m_s2=layout.gravity_m_s2)
+    tapped = layout.tap_run >= 0
+    own_leg = np.where(tapped, run_density[layout.tap_run] - density, 0.0) if layout.run_count else 0.0
     return State(
         graph=graph,
         point=point,
@@ -152,8 +240,10 @@ def evaluate(
         drop_m=drop,
         slope_s_m2=slope,
         velocity_pa=velocity,
+        column_m=column,
         head_m=head,
-        reading_pa=layout.taps.readings_pa(head, velocity, density_kg_m3=density, gravity_m_s2=layout.gravity_m_s2),
+        reading_pa=readings + own_leg * layout.gravity_m_s2 * layout.process_leg_m,
         density_kg_m3=density,
+        run_density_kg_m3=run_density,
         head_weight_pa_m=density * layout.gravity_m_s2,
     )

@@ -66,25 +66,28 @@ class RunLoss:
 
 
 class LossTable:
-    """Losses of many runs with one liquid, evaluated together.
+    """Losses of many runs, evaluated together.
 
     Parameters
     ----------
     runs : sequence of RunLoss
-    density_kg_m3, viscosity_pa_s, gravity_m_s2 : float
-        [kg/m³], [Pa s], [m/s²]
+    density_kg_m3, viscosity_pa_s : array_like, shape () or (runs,)
+        Of the liquid: one for all, or one for each run. Heads are of each run's own liquid. [kg/m³], [Pa s]
+    gravity_m_s2 : float
+        [m/s²]
     """
 
     def __init__(
-        self, runs: Sequence[RunLoss], *, density_kg_m3: float, viscosity_pa_s: float, gravity_m_s2: float
+        self, runs: Sequence[RunLoss], *, density_kg_m3: ArrayLike, viscosity_pa_s: ArrayLike, gravity_m_s2: float
     ) -> None:
+        density = np.broadcast_to(np.asarray(density_kg_m3, dtype=float), (len(runs),))
         bore = np.array([run.bore_m for run in runs])
         length = np.array([run.length_m for run in runs])
         area = pi * bore**2 / 4.0
         per_square = 1.0 / (2.0 * gravity_m_s2 * area**2)
         williams = np.array([run.hazen_williams_c or np.nan for run in runs])
         by_williams = np.isfinite(williams)
-        self._reynolds = density_kg_m3 / (viscosity_pa_s * area) * bore
+        self._reynolds = density / (np.asarray(viscosity_pa_s, dtype=float) * area) * bore
         self._roughness = np.array([(run.roughness_m or 0.0) for run in runs]) / bore
         self._pipe = np.where(by_williams, 0.0, length / bore * per_square)
         self._williams = np.where(
@@ -100,7 +103,7 @@ class LossTable:
             if run.valve_kv_m3_s:
                 self._square[index] += KV_PRESSURE_PA / (KV_DENSITY_KG_M3 * gravity_m_s2 * run.valve_kv_m3_s**2)
             if run.rated_drop_pa and run.rated_flow_m3_s:
-                self._square[index] += run.rated_drop_pa / (density_kg_m3 * gravity_m_s2 * run.rated_flow_m3_s**2)
+                self._square[index] += run.rated_drop_pa / (density[index] * gravity_m_s2 * run.rated_flow_m3_s**2)
 
     def evaluate(self, flow_m3_s: ArrayLike) -> tuple[Array, Array]:
         """Head lost in every run and its derivative.

@@ -76,6 +76,7 @@ def build_graph(
     is_open: Sequence[bool],
     exchanges: Sequence[bool],
     preference: Sequence[int],
+    ties: Sequence[bool] | None = None,
 ) -> Graph:
     """Matrices of a piping graph.
 
@@ -90,13 +91,17 @@ def build_graph(
         Whether liquid may enter or leave at each station.
     preference : sequence of int
         Runs in the order in which their flows should be taken as independent (metered ones first).
+    ties : sequence of bool, optional
+        Runs whose drop is known, so that they tie the heads of their ends; all open ones by default. One that carries liquid but ties
+        nothing (a control valve, a pump without a curve) parts the heads and not the flows.
 
     Returns
     -------
     Graph
     """
-    part, path, tree = _forest(station_count, ends, is_open)
-    chords = [run for run in range(len(ends)) if is_open[run] and run not in tree]
+    ties = is_open if ties is None else ties
+    part, path, tree = _forest(station_count, ends, ties)
+    chords = [run for run in range(len(ends)) if ties[run] and run not in tree]
     loop = np.zeros((len(chords), len(ends)))
     for row, chord in enumerate(chords):
         start, end = ends[chord]

@@ -130,6 +130,16 @@ class Run:
         return math.pi * self.bore_m**2 / 4.0
 
     @property
+    def is_check_valve(self) -> bool:
+        """Whether it lets liquid pass forwards alone."""
+        return "check valve" in self.item.casefold() or "non-return" in self.item.casefold()
+
+    @property
+    def lifts_unknown(self) -> bool:
+        """Whether a pump without a curve stands here: what it adds while liquid moves is not known."""
+        return self.pump is None and "pump" in self.item.casefold()
+
+    @property
     def is_pump(self) -> bool:
         """Whether a pump's curve is installed here."""
         return self.pump is not None
