@@ -389,7 +389,7 @@ def test_stated_spells_keep_their_flows_in_the_jobs_time(job_folder):
     assert flowing.flows[0].doubt.relative_fraction == pytest.approx(0.02)
 
 
-def test_levels_are_moved_to_the_centreline_and_said_to_be_unused(job_folder):
+def test_levels_are_moved_to_the_centreline(job_folder):
     job_folder.change("job.toml", 'logs = ["log.csv"]', 'logs = ["log.csv"]\nlevels = "levels.csv"')
     job_folder.write(
         "levels.csv",
@@ -399,14 +399,7 @@ def test_levels_are_moved_to_the_centreline_and_said_to_be_unused(job_folder):
     first, second = job.levels
     assert (first.elevation_m, first.ground_m, first.elevation_sd_m) == pytest.approx((2.05, 3.0, 0.01))
     assert (second.elevation_m, second.ground_m, second.elevation_sd_m) == (8.0, None, 0.025)
-    assert any(remark.startswith("levels: not used yet") for remark in unused_yet(job))
-
-
-def test_free_loss_and_own_temperature_are_said_to_be_unused(job_folder):
-    run(job_folder, "bore [mm],temperature [degC],loss", "100,60,free")
-    said = unused_yet(job_folder.read())
-    assert any("R1" in remark and "not used yet" in remark for remark in said)
-    assert any("temperature" in remark and "not used yet" in remark for remark in said)
+    assert unused_yet(job) == ()
 
 
 def test_what_only_a_hold_needs_is_said_to_be_unused(job_folder):

@@ -205,6 +205,7 @@ def _means(
         temperature_k=temperature if np.isfinite(temperature) else job.liquid.temperature_k,
         speed_ratio=_speeds(layout, timeline, cut, still),
         is_open=_states(layout, timeline, cut),
+        is_unsure=_unsure(layout, timeline, cut),
         run_temperature_k=_run_temperatures(layout, timeline, cut),
     )
 
@@ -235,6 +236,12 @@ def _speeds(layout: Layout, timeline: Timeline, cut: slice, still: bool) -> Arra
     pump = np.array([run.is_pump for run in layout.job.runs])
     assumed = np.where(pump, 0.0 if still else 1.0, 0.0)
     return np.asarray(np.where(pump & np.isfinite(measured), measured, assumed))
+
+
+def _unsure(layout: Layout, timeline: Timeline, cut: slice) -> tuple[bool, ...]:
+    """Runs whose state a log column should give, and does not in this spell."""
+    known = np.asarray(np.any(np.isfinite(timeline.open_fraction[cut]), axis=0))
+    return tuple(run.state is RunState.COLUMN and not known[index] for index, run in enumerate(layout.job.runs))
 
 
 def _run_temperatures(layout: Layout, timeline: Timeline, cut: slice) -> Array | None:

@@ -8,6 +8,7 @@ from pathlib import Path
 import numpy as np
 
 from headledger.diagnosis.averages import spell_means
+from headledger.diagnosis.circulation import circulations
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import Finding, list_findings
 from headledger.diagnosis.grade import run_grades, tap_head_m
@@ -15,8 +16,8 @@ from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.means import SpellMeans
 from headledger.diagnosis.readings import read_timeline
 from headledger.diagnosis.result import (
+    SIZELESS,
     CauseFound,
-    CauseKind,
     CheckResult,
     FlowFound,
     GaugeFound,
@@ -28,6 +29,7 @@ from headledger.diagnosis.result import (
 )
 from headledger.diagnosis.search import Posterior, search
 from headledger.diagnosis.spells import find_spells, unread_spells
+from headledger.diagnosis.vapour import vapour_findings
 from headledger.diagnosis.verdicts import Expected, Judged, expected_readings, judge_gauge
 from headledger.diagnosis.wording import cause_sentence, verdict_sentence
 from headledger.errors import JobError, NothingToCheckError, Problem
@@ -114,7 +116,9 @@ def check_job(
         posterior = search(model, should_stop=should_stop)
     except np.linalg.LinAlgError as error:
         raise JobError([_too_far_apart(job)]) from error
-    findings = list_findings(posterior)
+    findings = sorted(
+        [*list_findings(posterior), *vapour_findings(model, posterior)], key=lambda finding: -finding.probability
+    )
     tell("judging gauges", 0.85)
     judged = [judge_gauge(model, posterior, gauge) for gauge in range(layout.gauge_count)]
     return CheckResult(
@@ -126,7 +130,7 @@ def check_job(
         causes=tuple(_cause(model, finding) for finding in findings),
         rejects=tuple(reject for digest in digests for reject in digest.rejects),
         reject_count=sum(digest.reject_count for digest in digests),
-        remarks=(*job.remarks, *timeline.remarks, *unread_spells(job, stretches)),
+        remarks=(*job.remarks, *timeline.remarks, *unread_spells(job, stretches), *circulations(model)),
         trend=Trend(start_s=timeline.start_s, width_s=timeline.width_s, reading_pa=timeline.reading_pa),
     )
 
@@ -240,8 +244,8 @@ def _cause(model: Model, finding: Finding) -> CauseFound:
     return CauseFound(
         kind=finding.kind,
         place=finding.place,
-        size=None if finding.kind is CauseKind.SWAPPED else finding.mark.reported(finding.size),
-        u95=None if finding.kind is CauseKind.SWAPPED else 2.0 * finding.sd * abs(finding.mark.size_factor),
+        size=None if finding.kind in SIZELESS else finding.mark.reported(finding.size),
+        u95=None if finding.kind in SIZELESS else 2.0 * finding.sd * abs(finding.mark.size_factor),
         unit=finding.mark.unit,
         probability=finding.probability,
         accepted=finding.accepted,

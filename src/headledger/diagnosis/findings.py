@@ -43,6 +43,8 @@ class Finding:
         Its mark there.
     size, sd : float
         Posterior mean and standard deviation of its size there, as the mark counts it.
+    statement : str
+        What it says of itself, where that is more than its mark tells.
     """
 
     kind: CauseKind
@@ -53,6 +55,7 @@ class Finding:
     mark: Mark
     size: float
     sd: float
+    statement: str = ""
 
     @property
     def accepted(self) -> bool:

@@ -205,6 +205,26 @@ class Layout:
         return np.array([height[start] - height[end] for start, end in self.ends]).reshape(self.run_count)
 
     @cached_property
+    def profiles(self) -> tuple[tuple[Array, Array], ...]:
+        """The line of each run between its stations: distances from its start and elevations, shape (points,) each. [m], [m]"""
+        found = []
+        for run, (start, end) in zip(self.job.runs, self.ends, strict=True):
+            inner = sorted(
+                (point.distance_m, point.elevation_m)
+                for point in self.job.levels
+                if point.run == run.name and 0.0 < point.distance_m < run.length_m
+            )
+            height = self.station_elevation_m
+            points = [(0.0, float(height[start])), *inner, (run.length_m, float(height[end]))]
+            found.append((np.array([x for x, _ in points]), np.array([z for _, z in points])))
+        return tuple(found)
+
+    @cached_property
+    def levelled(self) -> frozenset[str]:
+        """Runs whose line between its stations is given."""
+        return frozenset(point.run for point in self.job.levels)
+
+    @cached_property
     def process_leg_m(self) -> Array:
         """Height of each gauge's column of flowing liquid, from where it reads up to its tap, shape (gauges,). [m]"""
         return np.array([self._process_leg(gauge) for gauge in self.job.gauges])

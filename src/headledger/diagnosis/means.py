@@ -37,6 +37,8 @@ class SpellMeans:
     speed_ratio : ndarray, shape (runs,)
         Of pumps; 0 elsewhere. [-]
     is_open : tuple of bool, length runs
+    is_unsure : tuple of bool
+        Runs of whose valve it is not known whether it is open: liquid may pass, and by what loss is not known; none by default.
     run_temperature_k : ndarray, shape (runs,), optional
         Of runs whose liquid has a temperature of its own, nan elsewhere. [K]
     """
@@ -57,6 +59,7 @@ class SpellMeans:
     temperature_k: float
     speed_ratio: Array
     is_open: tuple[bool, ...]
+    is_unsure: tuple[bool, ...] = ()
     run_temperature_k: Array | None = None
 
     @property

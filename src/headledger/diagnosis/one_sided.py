@@ -13,6 +13,7 @@ from scipy.special import log_ndtr
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.frame import Frame
 from headledger.diagnosis.grade import StationHeads, station_heads
+from headledger.diagnosis.state import spell_ties
 from headledger.plant.runs import LossKind
 
 LEAST_DROP_SD_M = 0.02
@@ -47,7 +48,7 @@ def sign_log_weight(model: Model, frame: Frame, chosen: Sequence[int]) -> float:
     total = 0.0
     for index, spell in enumerate(model.spells):
         heads: StationHeads | None = None
-        ties = model.layout.ties(spell.is_open, still=spell.is_still)
+        ties = spell_ties(model.layout, spell)
         for run in runs:
             direction = _direction(model, frame, index, run)
             if ties[run] or not spell.is_open[run] or direction == 0.0:

@@ -283,6 +283,10 @@ def _fill_run(
     if speed is not None:
         states[0][:, index] = speed.mean
     state = columns.get(run.state_column) if run.state is RunState.COLUMN else None
+    if run.state is RunState.COLUMN and state is None:
+        remarks.append(
+            f"{run.name}: no log has a column {run.state_column!r} for its state; whether it is open is taken as not known."
+        )
     if state is not None:
         states[1][:, index] = state.mean
 

@@ -55,6 +55,22 @@ class CauseKind(StrEnum):
     LEAK = "leak"
 
 
+SIZELESS = frozenset(
+    {
+        CauseKind.FROZEN,
+        CauseKind.NOISY,
+        CauseKind.AT_LIMIT,
+        CauseKind.SWAPPED,
+        CauseKind.CROSSED_LINES,
+        CauseKind.EQUALISED,
+        CauseKind.ROOT,
+        CauseKind.CLOSED_OFF,
+        CauseKind.VAPOUR,
+    }
+)
+"""Kinds of cause that are there or not, without a size."""
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Place:
     """Where a cause sits: at most one of gauge, gauges, run and station; none of them is the whole job.
@@ -63,6 +79,8 @@ class Place:
     ----------
     gauge, run, station : str
         Empty where it does not apply.
+    distance_m : float or None
+        Along `run` from its start, where levels tell. [m]
     gauges : tuple of str
         A swapped pair, or the gauges of one late log file.
     """
@@ -71,6 +89,7 @@ class Place:
     gauges: tuple[str, ...] = ()
     run: str = ""
     station: str = ""
+    distance_m: float | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -146,7 +146,15 @@ class State:
 
 def spell_graph(layout: Layout, spell: SpellMeans) -> Graph:
     """The piping graph as its valves stand in a spell, its heads tied by runs whose drop is known."""
-    return layout.graph(spell.is_open, layout.ties(spell.is_open, still=spell.is_still))
+    return layout.graph(spell.is_open, spell_ties(layout, spell))
+
+
+def spell_ties(layout: Layout, spell: SpellMeans) -> tuple[bool, ...]:
+    """Which runs tie the heads of their ends in a spell."""
+    ties = layout.ties(spell.is_open, still=spell.is_still)
+    if not any(spell.is_unsure):
+        return ties
+    return tuple(tied and not unsure for tied, unsure in zip(ties, spell.is_unsure, strict=True))
 
 
 def spell_liquid(layout: Layout, spell: SpellMeans, shift: LiquidShift | None = None) -> SpellLiquid:

@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from headledger.diagnosis.budget import OWN_CALIBRATION, InputKind, UncertainInput, instrument_of
-from headledger.diagnosis.estimate import Model
+from headledger.diagnosis.estimate import FREE_VELOCITY_M_S, Model
 from headledger.diagnosis.frame import Frame
+from headledger.diagnosis.means import SpellMeans
 from headledger.diagnosis.result import Verdict
 from headledger.diagnosis.search import Explanation, Posterior
 from headledger.plant.job import CheckSettings, DecisionRule
@@ -24,6 +25,9 @@ WIDENED = 10.0
 
 UNCHECKED_SHARE = 0.8
 """Part of the widened prior's standard deviation beyond which nothing else in the data determines a gauge. [-]"""
+
+UNKNOWN_FLOW_SHARE = 0.3
+"""A flow doubted by more than this part of what any unmetered flow is doubted by is not determined. [-]"""
 
 SUSPECTED = 0.2
 """A gauge with a cause of its own at least this probable is never merely unchecked. [-]"""
@@ -69,6 +73,8 @@ class Judged:
         Averaged over explanations. [-]
     error_pa, u95_pa, tolerance_pa : float
         Under the leading explanation, in the spell where the error is most probably outside. [Pa]
+    unchecked_because : str
+        What leaves the pressure there open, as the end of a sentence; empty where the gauge is checked.
     """
 
     verdict: Verdict
@@ -76,6 +82,7 @@ class Judged:
     error_pa: float
     u95_pa: float
     tolerance_pa: float
+    unchecked_because: str = ""
 
 
 def own_inputs(model: Model, gauge: int) -> tuple[NDArray[np.int64], Array]:
@@ -250,7 +257,47 @@ def judge_gauge(model: Model, posterior: Posterior, gauge: int) -> Judged:
         error_pa=float(leading.mean_pa[worst]),
         u95_pa=2.0 * float(leading.sd_pa[worst]),
         tolerance_pa=noun.tolerance_at(float(state.reading_pa[gauge])),
+        unchecked_because=why_unchecked(model, posterior, gauge, int(spells[worst])) if unchecked else "",
     )
+
+
+def why_unchecked(model: Model, posterior: Posterior, gauge: int, index: int) -> str:
+    """What leaves the pressure at a gauge open in a spell, as the end of a sentence."""
+    layout, linear = model.layout, posterior.leading.frame.linear
+    spell, state = model.spells[index], linear.states[index]
+    station = layout.station_index[layout.job.gauges[gauge].station]
+    part = state.graph.part
+    others = [
+        other
+        for other in np.flatnonzero(np.isfinite(spell.reading_pa))
+        if other != gauge and part[layout.station_index[layout.job.gauges[int(other)].station]] == part[station]
+    ]
+    levels = [s for s in np.flatnonzero(np.isfinite(spell.level_m)) if part[s] == part[station]]
+    if not others and not levels:
+        return ", since no other gauge and no surface shares a known head with it"
+    deviation = _flow_sd_without(model, posterior, gauge, index)
+    open_flows = [
+        run.name
+        for number, run in enumerate(layout.job.runs)
+        if deviation[number] > UNKNOWN_FLOW_SHARE * FREE_VELOCITY_M_S * layout.area_m2[number]
+    ]
+    if open_flows:
+        return f", since the flow in {', '.join(open_flows[:3])} is not determined"
+    return ""
+
+
+def _flow_sd_without(model: Model, posterior: Posterior, gauge: int, index: int) -> Array:
+    """Standard deviation of every run's flow in a spell, from everything but one gauge. [m³/s]"""
+    linear = posterior.leading.frame.linear
+
+    def silent(spell: SpellMeans) -> SpellMeans:
+        readings = spell.reading_pa.copy()
+        readings[gauge] = np.nan
+        return replace(spell, reading_pa=readings)
+
+    rest = Model(model.layout, [silent(spell) for spell in model.spells])
+    without = rest.linearise([state.point for state in linear.states], applied=linear.applied)
+    return rest.flow_sd_m3_s(without, index)
 
 
 def own_cause_probability(posterior: Posterior, gauge: int) -> float:

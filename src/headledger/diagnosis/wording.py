@@ -66,6 +66,8 @@ def place_words(place: Place) -> str:
     """A place in words."""
     if place.gauges:
         return " and ".join(place.gauges)
+    if place.run and place.distance_m is not None:
+        return f"{place.run}, {place.distance_m:.0f} m along"
     return place.gauge or place.run or place.station or "the whole job"
 
 
@@ -76,7 +78,18 @@ def kind_words(kind: CauseKind) -> str:
 
 def cause_sentence(model: Model, finding: Finding) -> str:
     """A finding in words: what, where, how much, and what else it may be."""
-    return _statement(model, finding) + _rival_clause(finding)
+    return (finding.statement or _statement(model, finding)) + _rival_clause(finding)
+
+
+def vapour_statement(model: Model, place: Place, spell: int, *, pressure_pa: float, vapour_pressure_pa: float) -> str:
+    """A place whose computed pressure lies below vapour pressure, in words."""
+    unit = model.layout.job.display.pressure
+    at = place_words(place)
+    found, limit = (f"{pa / unit.factor:.3g} {unit.text}" for pa in (pressure_pa, vapour_pressure_pa))
+    return (
+        f"{at}: in spell {model.spells[spell].id} the absolute pressure comes out at {found}, below the liquid's vapour pressure of "
+        f"{limit}: the column cannot stand there; vapour or drawn-in air is to be expected."
+    )
 
 
 def _rival_clause(finding: Finding) -> str:
@@ -164,7 +177,7 @@ def verdict_sentence(gauge: Gauge, judged: Judged, causes: Sequence[Finding], gi
         f"{percent(judged.outside_probability)} likely outside"
     )
     if judged.verdict is Verdict.UNCHECKED:
-        return f"{gauge.tag}: {words}."
+        return f"{gauge.tag}: {words}{judged.unchecked_because}."
     likely = [f for f in causes if f.accepted] or list(causes[:1] if causes and causes[0].probability >= 0.2 else [])
     because = f"; most likely {kind_words(likely[0].kind)}" if likely and judged.verdict is not Verdict.PASS else ""
     leans = ""

@@ -15,7 +15,6 @@ import numpy as np
 from numpy.typing import NDArray
 
 from headledger.errors import NetworkError
-from headledger.statistics.linear import cholesky, solve_lower
 
 Array = NDArray[np.float64]
 
@@ -329,9 +328,7 @@ def _solve(matrix: Array, right: Array) -> Array:
     scale = 1.0 / np.sqrt(np.maximum(np.diag(matrix), 1e-300))
     scaled = matrix * scale[:, None] * scale[None, :]
     scaled[np.diag_indices_from(scaled)] += 1e-14
-    lower = cholesky(scaled)
-    half = solve_lower(lower, (scale * right)[:, None])
-    return np.asarray(scale * np.linalg.solve(lower.T, half)[:, 0])
+    return np.asarray(scale * np.linalg.solve(scaled, scale * right))
 
 
 def _search(losses: LossFunction, space: _Space, here: _Look, direction: Array) -> _Look | None:

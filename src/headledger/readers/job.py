@@ -10,7 +10,7 @@ from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
 
 from headledger.plant.gauges import Gauge
 from headledger.plant.job import DisplayUnits, Job, LevelPoint, LiquidKind, StatedSpell
-from headledger.plant.runs import LossKind, Run
+from headledger.plant.runs import Run
 from headledger.plant.stations import Exchange, Station, StationKind
 from headledger.quantities import Dimension, PressureKind, Unit
 from headledger.readers.job_files import JobFiles
@@ -92,13 +92,6 @@ def read_job(folder: Path | str, *, logs_needed: bool = True) -> Job:
 def unused_yet(job: Job) -> tuple[str, ...]:
     """What is read but has no part in the judgement yet, a sentence each."""
     remarks = []
-    if job.levels:
-        remarks.append("levels: not used yet; high points between stations are not looked at.")
-    if any(run.loss is LossKind.FREE for run in job.runs):
-        names = ", ".join(run.name for run in job.runs if run.loss is LossKind.FREE)
-        remarks.append(f"{names}: loss = free is not used yet; the loss is taken as described.")
-    if any(run.temperature_k is not None or run.temperature_column for run in job.runs):
-        remarks.append("runs: temperatures of their own are not used yet; the job's liquid temperature stands.")
     if job.site.barometer_column:
         remarks.append(
             "barometer: its log column is not used yet; the standard atmosphere stands in, with its own doubt."
@@ -107,8 +100,6 @@ def unused_yet(job: Job) -> tuple[str, ...]:
         remarks.append("runs: ratings are not used yet; they limit a pressure hold.")
     if job.hold:
         remarks.append("[hold]: not used yet; a check does not look at holds.")
-    if any(run.item.casefold() == "check valve" for run in job.runs):
-        remarks.append("check valves: not used yet; at rest both sides are taken as one head.")
     return tuple(remarks)
 
 

@@ -266,8 +266,12 @@ def _run_line(frame: _Frame, leg: Leg, grade: RunGrade, left: float, right: floa
 
 def _step_share(frame: _Frame, leg: Leg, cause: int) -> float:
     """How far along a run, in the sense of the way, a cause's step is drawn: a pocket below the high end, all else at the middle."""
-    if frame.result.causes[cause].kind is not CauseKind.AIR_POCKET:
+    found = frame.result.causes[cause]
+    if found.kind is not CauseKind.AIR_POCKET:
         return 0.5
+    if found.place.distance_m is not None and leg.run.length_m > 0.0:
+        share = min(max(found.place.distance_m / leg.run.length_m, 0.0), 1.0)
+        return share if leg.forwards else 1.0 - share
     return 0.12 if _falls(frame, leg) else 0.88
 
 
@@ -291,28 +295,41 @@ def _steps(frame: _Frame, line: _RunLine) -> tuple[list[Line], list[Note]]:
 
 
 def _pockets(frame: _Frame, leg: Leg, grade: RunGrade, left: float, right: float) -> list[Beads]:
-    """Gas where it sits: from the high end of the run down, over the height it has in this spell."""
+    """Gas where it sits: from its high point down the pipe, over the height it has in this spell."""
     found = []
-    job = frame.result.job
     for step in grade.steps:
-        if frame.result.causes[step.cause].kind is not CauseKind.AIR_POCKET:
+        cause = frame.result.causes[step.cause]
+        if cause.kind is not CauseKind.AIR_POCKET:
             continue
-        ends = [job.station(leg.first).elevation_m, job.station(leg.last).elevation_m]
-        descent = abs(ends[0] - ends[1])
-        share = min(abs(step.drop_m) / descent, 1.0) if descent > 0.0 else 0.0
-        start, stop = (
-            (left, left + share * (right - left)) if _falls(frame, leg) else (right, right - share * (right - left))
-        )
-        top = max(ends) * frame.scale
-        beads = [
-            (
-                start + k / (_POCKET_BEADS - 1) * (stop - start),
-                top - k / (_POCKET_BEADS - 1) * share * descent * frame.scale,
-            )
-            for k in range(_POCKET_BEADS)
-        ]
-        found.append(Beads(points=tuple(beads), role=Role.POCKET, panel=frame.pipe_panel))
+        profile = [point for point in _pipe(frame) if left - 1e-9 <= point[0] <= right + 1e-9]
+        if cause.place.distance_m is None:
+            top = max(range(len(profile)), key=lambda k: profile[k][1])
+        else:
+            x = left + _step_share(frame, leg, step.cause) * (right - left)
+            top = min(range(len(profile)), key=lambda k: abs(profile[k][0] - x))
+        down = profile[top:] if step.drop_m * (1.0 if leg.forwards else -1.0) > 0.0 else profile[top::-1]
+        beads = _downwards(down, abs(step.drop_m) * frame.scale)
+        found.append(Beads(points=beads, role=Role.POCKET, panel=frame.pipe_panel))
     return found
+
+
+def _downwards(profile: Sequence[Point], depth: float) -> tuple[Point, ...]:
+    """Points along a falling line, from its first point down to a depth below it or to its foot."""
+    foot = [profile[0]]
+    for before, after in pairwise(profile):
+        if after[1] >= before[1]:
+            break
+        if profile[0][1] - after[1] >= depth:
+            share = (depth - (profile[0][1] - before[1])) / (before[1] - after[1])
+            foot.append((before[0] + share * (after[0] - before[0]), profile[0][1] - depth))
+            break
+        foot.append(after)
+    strung = [
+        (a[0] + k / _POCKET_BEADS * (b[0] - a[0]), a[1] + k / _POCKET_BEADS * (b[1] - a[1]))
+        for a, b in pairwise(foot)
+        for k in range(_POCKET_BEADS)
+    ]
+    return (*strung, foot[-1])
 
 
 def _levels(frame: _Frame, leg: Leg, left: float, right: float) -> list[tuple[float, LevelPoint]]:

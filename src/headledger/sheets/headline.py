@@ -74,7 +74,8 @@ def place_label(place: Place) -> str:
     if place.gauges:
         return _listed(place.gauges)
     if place.run:
-        return f"run {place.run}"
+        along = "" if place.distance_m is None else f", {place.distance_m:.0f} m along"
+        return f"run {place.run}{along}"
     if place.station:
         return f"station {place.station}"
     return place.gauge or "the whole job"

@@ -183,7 +183,8 @@ def _place(place: Place) -> dict[str, Any]:
         "run": place.run,
         "station": place.station,
     }
-    return {key: value for key, value in named.items() if value}
+    found = {key: value for key, value in named.items() if value}
+    return found if place.distance_m is None else found | {"distance": _number(place.distance_m)}
 
 
 def _reject(reject: Reject) -> dict[str, Any]:

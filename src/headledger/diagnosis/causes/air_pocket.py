@@ -13,47 +13,72 @@ Array = NDArray[np.float64]
 
 
 def marks(view: View) -> list[Mark]:
-    """Marks of every run that descends with its flow: gas that keeps its height or shrinks with pressure, there when still or not."""
+    """Marks of every descent with the flow: gas that keeps its height or shrinks with pressure, there when still or not."""
     found = []
     for run, noun in enumerate(view.layout.job.runs):
-        descent = _descent_m(view, run)
-        if descent <= 0.0:
-            continue
-        forms = [
-            (shrinks, still)
-            for shrinks in (False, True)
-            for still in ((False, True) if any(spell.is_still for spell in view.model.spells) else (False,))
-        ]
-        for shrinks, still in forms:
-            steps = _steps(view, run, shrinks=shrinks, still=still)
-            vector = view.drop_vector(steps)
-            least = view.least_size(vector)
-            if least < descent:
-                found.append(
-                    Mark(
-                        kind=CauseKind.AIR_POCKET,
-                        place=Place(run=noun.name),
-                        vector=vector,
-                        prior=SizePrior(least=least, most=descent, negative=False),
-                        share=1.0 / len(forms),
-                        unit=view.layout.job.display.length,
-                        drops_m=tuple(steps),
-                        form=" ".join((["shrinks"] if shrinks else []) + (["still"] if still else [])),
-                    )
+        for distance_m, descent_m in descents(view, run):
+            place = Place(run=noun.name, distance_m=distance_m if noun.name in view.layout.levelled else None)
+            found += _forms(view, run, place, descent_m)
+    return found
+
+
+def _forms(view: View, run: int, place: Place, descent_m: float) -> list[Mark]:
+    """The forms of a pocket on one descent."""
+    found = []
+    still_known = any(spell.is_still for spell in view.model.spells)
+    forms = [(shrinks, still) for shrinks in (False, True) for still in ((False, True) if still_known else (False,))]
+    for shrinks, still in forms:
+        steps = _steps(view, run, shrinks=shrinks, still=still)
+        vector = view.drop_vector(steps)
+        least = view.least_size(vector)
+        if least < descent_m:
+            found.append(
+                Mark(
+                    kind=CauseKind.AIR_POCKET,
+                    place=place,
+                    vector=vector,
+                    prior=SizePrior(least=least, most=descent_m, negative=False),
+                    share=1.0 / len(forms),
+                    unit=view.layout.job.display.length,
+                    drops_m=tuple(steps),
+                    form=" ".join((["shrinks"] if shrinks else []) + (["still"] if still else [])),
                 )
+            )
+    return found
+
+
+def descents(view: View, run: int) -> list[tuple[float, float]]:
+    """Where a run's line turns down in the direction of its flow, and how far it falls from there.
+
+    Parameters
+    ----------
+    view : View
+    run : int
+
+    Returns
+    -------
+    list of (float, float)
+        Distance of each high point from the run's start, and the fall after it; none where nothing flows. [m], [m]
+    """
+    direction = _direction(view, run)
+    if direction == 0.0:
+        return []
+    distance, height = view.layout.profiles[run]
+    if direction < 0.0:
+        distance, height = distance[::-1], height[::-1]
+    found: list[tuple[float, float]] = []
+    top = 0
+    for point in range(1, height.size):
+        if height[point] >= height[point - 1]:
+            top = point
+        elif point + 1 == height.size or height[point + 1] >= height[point]:
+            found.append((float(distance[top]), float(height[top] - height[point])))
     return found
 
 
 def _direction(view: View, run: int) -> float:
     """Direction of a run's flow over all spells: 1, −1, or 0 where it has none."""
     return float(np.sign(sum(state.flow_m3_s[run] for state in view.linear.states)))
-
-
-def _descent_m(view: View, run: int) -> float:
-    """How far a run descends in the direction of its flow. [m]"""
-    start, end = view.layout.ends[run]
-    height = view.layout.station_elevation_m
-    return _direction(view, run) * float(height[start] - height[end])
 
 
 def _steps(view: View, run: int, *, shrinks: bool, still: bool) -> list[Array]:
