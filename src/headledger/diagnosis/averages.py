@@ -6,7 +6,9 @@ What is left wanders slowly, so its effect on a mean comes from the scatter of l
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import NDArray
@@ -24,6 +26,9 @@ Array = NDArray[np.float64]
 
 FEWEST_BATCHES, MOST_BATCHES = 4, 8
 """Batches of a spell whose scatter gives the noise of its mean: long enough to hold what wanders slowly."""
+
+PIECES, MOST_ROWS, LEAST_PIECE_BLOCKS = 12, 300, 6
+"""Pieces of time into which all spells together are cut, readings that they may make, and blocks that a piece holds at least."""
 
 OPEN_SHARE = 0.5
 """A run is open in a spell where its column says so more often than not. [-]"""
@@ -53,6 +58,54 @@ def spell_means(layout: Layout, timeline: Timeline, spells: tuple[Spell, ...]) -
         if np.isfinite(summary.mean_pa).any():
             found.append(_means(layout, timeline, spell, summary, noise_pa, len(found) + 1))
     return tuple(found)
+
+
+def spell_pieces(layout: Layout, timeline: Timeline, spells: tuple[Spell, ...]) -> tuple[SpellMeans, ...]:
+    """What each spell says, cut into pieces of time, so that what changes within a spell can be seen.
+
+    Parameters
+    ----------
+    layout : Layout
+    timeline : Timeline
+    spells : tuple of Spell
+
+    Returns
+    -------
+    tuple of SpellMeans
+        As `spell_means`, each spell in as many rows as it has pieces, all with its `id`.
+
+    Notes
+    -----
+    A piece has the noise that makes the mean of all of a spell's pieces as sure as the spell's own mean: what wanders slowly counts in
+    full, and the contrasts between pieces are not taken as surer than they are.
+    """
+    summaries = [_summary(layout, timeline, spell) for spell in spells]
+    noise = _pooled_noise(layout, spells, summaries)
+    kept = [k for k, summary in enumerate(summaries) if np.isfinite(summary.mean_pa).any()]
+    lengths = [spells[k].last - spells[k].first for k in kept]
+    counts = _piece_counts(lengths, gauges=layout.gauge_count)
+    found: list[SpellMeans] = []
+    for number, (k, count) in enumerate(zip(kept, counts, strict=True), start=1):
+        if count == 1:
+            found.append(_means(layout, timeline, spells[k], summaries[k], noise[k], number))
+            continue
+        wider = float(np.sqrt(count))
+        bounds = np.linspace(spells[k].first, spells[k].last, count + 1).round().astype(int)
+        for first, last in pairwise(bounds.tolist()):
+            piece = replace(spells[k], first=first, last=last)
+            summary = replace(_summary(layout, timeline, piece), flow_noise_m3_s=wider * summaries[k].flow_noise_m3_s)
+            if np.isfinite(summary.mean_pa).any():
+                means = _means(layout, timeline, piece, summary, wider * noise[k], number)
+                start_s, end_s = timeline.start_s[first], timeline.start_s[last - 1] + timeline.width_s
+                found.append(replace(means, start_s=float(start_s), end_s=float(end_s)))
+    return tuple(found)
+
+
+def _piece_counts(lengths: Sequence[int], *, gauges: int) -> list[int]:
+    """Into how many pieces each spell is cut: all together about a dozen, fewer where many gauges make many rows."""
+    wanted = int(np.clip(MOST_ROWS // max(gauges, 1), len(lengths), PIECES)) if lengths else 0
+    piece = max(sum(lengths) / max(wanted, 1), LEAST_PIECE_BLOCKS)
+    return [max(1, round(length / piece)) for length in lengths]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -34,7 +34,7 @@ def circulations(model: Model) -> tuple[str, ...]:
             if total > WORTH_TELLING_PA:
                 runs = tuple(layout.job.runs[int(run)].name for run in np.flatnonzero(loop))
                 most, spells = said.get(runs, (0.0, []))
-                said[runs] = (max(most, total), [*spells, spell.id])
+                said[runs] = (max(most, total), list(dict.fromkeys([*spells, spell.id])))
     unit = layout.job.display.pressure
     return tuple(
         f"{', '.join(runs)}: their columns differ by {most / unit.factor:.2g} {unit.text} round the loop, so that the liquid circulates in "

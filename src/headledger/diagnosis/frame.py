@@ -42,6 +42,17 @@ class Frame:
     gram: Array
     product: Array
 
+    def only(self, kept: Sequence[int]) -> Frame:
+        """The frame with some of its marks."""
+        index = np.array(kept, dtype=np.int64)
+        return replace(
+            self,
+            marks=tuple(self.marks[i] for i in kept),
+            white=self.white[:, index],
+            gram=self.gram[np.ix_(index, index)],
+            product=self.product[index],
+        )
+
     @property
     def log_evidence_of_none(self) -> float:
         """Log density of the data with no cause present. [-]"""

@@ -31,6 +31,9 @@ REACH_NATS = 7.0
 KEPT_NATS = 12.0
 """Sets further below the best than this are not listed. [nat]"""
 
+MOST_MOMENTS = 4
+"""As many moments at which a cause may begin are weighed together with others: the likeliest."""
+
 PARALLEL = 0.9999
 """Whitened correlation above which two marks are one and the same to the data: never together in a set."""
 
@@ -140,7 +143,23 @@ def search(
 def shared_frame(model: Model, points: Sequence[Point], kinds: Collection[CauseKind] | None = None) -> Frame:
     """The frame of all marks at one point."""
     linear = model.linearise(points)
-    return make_frame(linear, all_marks(View(model, linear), kinds))
+    return _pruned(make_frame(linear, all_marks(View(model, linear), kinds)))
+
+
+def _pruned(frame: Frame) -> Frame:
+    """The frame without the less likely moments of causes that may begin at many: their like stand for them."""
+    timed = [index for index, mark in enumerate(frame.marks) if mark.start_s is not None]
+    if not timed:
+        return frame
+    gains = dict(zip(timed, frame.log_gains(np.array([[i] for i in timed])).tolist(), strict=True))
+    by_key: dict[tuple[CauseKind, Place], list[int]] = {}
+    for index in timed:
+        by_key.setdefault(frame.marks[index].key, []).append(index)
+    dropped: set[int] = set()
+    for same in by_key.values():
+        dropped |= set(sorted(same, key=lambda index: -gains[index])[MOST_MOMENTS:])
+    kept = [index for index in range(len(frame.marks)) if index not in dropped]
+    return frame.only(kept)
 
 
 def _solution(model: Model, frame: Frame, chosen: tuple[int, ...]) -> tuple[Point, ...]:

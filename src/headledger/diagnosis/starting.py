@@ -42,18 +42,19 @@ def first_points(layout: Layout, spells: Sequence[SpellMeans]) -> tuple[Point, .
     -------
     tuple of Point
     """
-    points = []
-    for spell in spells:
+    points: list[Point] = []
+    for index, spell in enumerate(spells):
         graph = spell_graph(layout, spell)
-        flows = np.zeros(0) if spell.is_still else _first_flows(layout, spell)
+        before = points[-1].flow_m3_s if index and spells[index - 1].id == spell.id else None
+        flows = np.zeros(0) if spell.is_still else _first_flows(layout, spell, before)
         point = Point(reference_head_m=np.zeros(graph.parts), flow_m3_s=flows)
         state = evaluate(layout, spell, point)
         points.append(Point(reference_head_m=middle_heads_m(layout, spell, state), flow_m3_s=flows))
     return tuple(points)
 
 
-def _first_flows(layout: Layout, spell: SpellMeans) -> Array:
-    """Independent flows: as metered, the others by the best of several robust fits. [m³/s]"""
+def _first_flows(layout: Layout, spell: SpellMeans, before: Array | None) -> Array:
+    """Independent flows: as metered, the others by the best of several robust fits, or from the piece before of the same spell. [m³/s]"""
     runs = spell_graph(layout, spell).basis
     metered = np.isfinite(spell.flow_m3_s[runs])
     flows = np.where(metered, np.nan_to_num(spell.flow_m3_s[runs]), 0.0)
@@ -62,6 +63,9 @@ def _first_flows(layout: Layout, spell: SpellMeans) -> Array:
         return flows
     scale = FREE_VELOCITY_M_S * layout.area_m2[runs[free]]
     fit = _Fit(layout, spell, flows, free, scale)
+    if before is not None and before.size == flows.size:
+        flows[free] = fit.from_start(before[free])[1]
+        return flows
     patterns = list(product(STARTS, repeat=min(free.size, 3)))[:MOST_PATTERNS]
     tried = [fit.from_start(np.resize(np.array(pattern), free.size) * scale) for pattern in patterns]
     flows[free] = min(tried, key=lambda pair: pair[0])[1]

@@ -4,7 +4,9 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from datetime import datetime
 from typing import TYPE_CHECKING
+from zoneinfo import ZoneInfo
 
 from headledger.diagnosis.result import CauseKind, Place, Verdict
 from headledger.quantities import format_quantity as amount
@@ -14,6 +16,8 @@ if TYPE_CHECKING:  # the screen words things before anything heavy is loaded
     from headledger.diagnosis.findings import Finding
     from headledger.diagnosis.verdicts import Judged
     from headledger.plant.gauges import Gauge
+
+SECONDS_PER_HOUR = 3600.0
 
 COMPARABLE = 0.25
 """A rival with at least this part of a cause's own probability is named in its sentence. [-]"""
@@ -71,6 +75,11 @@ def place_words(place: Place) -> str:
     return place.gauge or place.run or place.station or "the whole job"
 
 
+def clock(model: Model, time_s: float) -> str:
+    """Time of day in the job's own zone."""
+    return f"{datetime.fromtimestamp(time_s, ZoneInfo(model.layout.job.timezone)):%H:%M}"
+
+
 def kind_words(kind: CauseKind) -> str:
     """A kind of cause in words, with its article."""
     return KIND_WORDS[kind]
@@ -125,6 +134,12 @@ def _statement(model: Model, finding: Finding) -> str:
         return f"{at}: its elevation is stated {amount(abs(size), unit)} {side}; it reads a column of liquid {direction} at every flow."
     if finding.kind is CauseKind.LEG_GAS and unit:
         return f"{at} reads {amount(abs(size), unit)} {direction} at every flow: gas stands in its leg."
+    if finding.kind is CauseKind.DRIFT and unit and finding.mark.start_s is not None:
+        way = "up" if size > 0.0 else "down"
+        rate = amount(abs(size) * SECONDS_PER_HOUR, unit)
+        return f"{at} drifts {way} by {rate} an hour from about {clock(model, finding.mark.start_s)} on."
+    if finding.kind is CauseKind.STEP and unit and finding.mark.start_s is not None:
+        return f"{at} jumps to {amount(abs(size), unit)} {direction} at about {clock(model, finding.mark.start_s)} and stays there."
     if finding.kind is CauseKind.SWAPPED:
         return f"{at} look exchanged: each logs what the other should read."
     return _pipe_statement(model, finding, at, size)

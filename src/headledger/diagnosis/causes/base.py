@@ -44,6 +44,8 @@ class Mark:
         In which the size is spoken of.
     drops_m : tuple of ndarray, shape (runs,) each
         Head that a unit of its size takes in every run, spell by spell; empty for what takes none. [m]
+    start_s : float or None
+        When it begins, where it does not hold all along. [s since 1970-01-01 UTC]
     noise_factor : float
         By which it stretches the noise of its gauges. [-]
     form : str
@@ -61,6 +63,7 @@ class Mark:
     size_factor: float = 1.0
     unit: Unit | None = None
     drops_m: tuple[Array, ...] = ()
+    start_s: float | None = None
     noise_factor: float = 1.0
     form: str = ""
 
