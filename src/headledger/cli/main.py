@@ -47,6 +47,9 @@ def main(argv: Sequence[str] | None = None) -> int:
         An `ExitCode`.
     """
     prepare_streams()
+    # matrices here are small: threads of the algebra library would only get in one another's way
+    for name in ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS"):
+        os.environ.setdefault(name, "1")
     try:
         status = commands.main(args=argv, prog_name="headledger", standalone_mode=False)
     except click.ClickException as error:

@@ -82,6 +82,8 @@ class Linear:
     white : Whitened
     applied : Applied
         Causes allowed for in the states.
+    model : Model
+        What was linearised.
     calibration : ndarray, shape (rows, inputs)
         How the shared inputs move the data rows, in their standard deviations (the groups' `shared`, stacked).
     """
@@ -91,7 +93,17 @@ class Linear:
     groups: tuple[Group, ...]
     white: Whitened
     applied: Applied
+    model: Model
     calibration: Array
+
+    def noise_pa(self, gauge: int) -> Array:
+        """Noise of one gauge's rows. [Pa]"""
+        found = [
+            float(group.noise_sd[int(np.flatnonzero(place.gauges == gauge)[0])])
+            for place, group in zip(self.rows, self.groups, strict=True)
+            if (place.gauges == gauge).any()
+        ]
+        return np.array(found)
 
     @property
     def row_count(self) -> int:
@@ -158,6 +170,7 @@ class Model:
             groups=tuple(groups),
             white=whiten(groups),
             applied=applied,
+            model=self,
             calibration=np.vstack([group.shared for group in groups]),
         )
 

@@ -46,6 +46,7 @@ def sign_log_weight(model: Model, frame: Frame, chosen: Sequence[int]) -> float:
     if not runs:
         return 0.0
     total = 0.0
+    model = frame.linear.model
     for index, spell in enumerate(model.spells):
         heads: StationHeads | None = None
         ties = spell_ties(model.layout, spell)

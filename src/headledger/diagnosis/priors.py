@@ -23,9 +23,12 @@ class CountPrior:
     ----------
     of : tuple of float
         Of none, one, two, …; sums to 1. [-]
+    other_kinds : int
+        Kinds of cause that are weighed besides those that have marks.
     """
 
     of: tuple[float, ...] = (NO_CAUSE, ONE_CAUSE, TWO_CAUSES, THREE_CAUSES)
+    other_kinds: int = 0
 
     @property
     def most(self) -> int:
@@ -33,17 +36,20 @@ class CountPrior:
         return len(self.of) - 1
 
 
-def mark_shares(marks: Sequence[Mark]) -> NDArray[np.float64]:
+def mark_shares(marks: Sequence[Mark], other_kinds: int = 0) -> NDArray[np.float64]:
     """Prior share of each mark if exactly one cause is present: kinds alike, places alike within a kind.
 
     Parameters
     ----------
     marks : sequence of Mark
+    other_kinds : int
+        Kinds weighed besides.
 
     Returns
     -------
     ndarray, shape (marks,)
-        Sums to 1.
+        Sums to 1 with what the other kinds have.
     """
     places = Counter(kind for kind, _ in {mark.key for mark in marks})
-    return np.array([mark.share / len(places) / places[mark.kind] for mark in marks])
+    kinds = len(places) + other_kinds
+    return np.array([mark.share / kinds / places[mark.kind] for mark in marks])

@@ -43,6 +43,7 @@ def _spell(model: Model, posterior: Posterior, pieces: Sequence[int], keys: Sequ
     leading = posterior.leading
     linear = leading.frame.linear
     flows = np.mean([linear.states[k].flow_m3_s for k in pieces], axis=0)
+    model = linear.model
     deviations = np.mean([model.flow_sd_m3_s(linear, k) for k in pieces], axis=0)
     grades = [run_grades(model, leading.frame, leading.chosen, k, keys) for k in pieces]
     first, last = model.spells[pieces[0]], model.spells[pieces[-1]]

@@ -21,6 +21,7 @@ from headledger.diagnosis.priors import CountPrior, mark_shares
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.diagnosis.starting import first_points
 from headledger.diagnosis.state import Point
+from headledger.diagnosis.variants import VARIANT_KINDS, Variant, closed_variants, spoilt_variants
 from headledger.statistics.sizes import NODES, log_sum
 
 Array = NDArray[np.float64]
@@ -30,6 +31,9 @@ REACH_NATS = 7.0
 
 KEPT_NATS = 12.0
 """Sets further below the best than this are not listed. [nat]"""
+
+VARIANT_GAIN, MOST_VARIANTS = 2.0, 4
+"""Least log evidence that a changed model must bring to be weighed with further causes, and as many are. [nat], [-]"""
 
 MOST_MOMENTS = 4
 """As many moments at which a cause may begin are weighed together with others: the likeliest."""
@@ -125,8 +129,9 @@ def search(
     -------
     Posterior
     """
-    prior = prior or CountPrior()
     stay = points is not None
+    whole = kinds is None and not stay
+    prior = prior or CountPrior(other_kinds=len(VARIANT_KINDS) if whole else 0)
     frame = shared_frame(model, points if points is not None else first_points(model.layout, model.spells), kinds)
     # sets of two are enough to see where to linearise
     weighed = _weigh(frame, prior if stay else CountPrior(of=prior.of[:3]), should_stop)
@@ -137,7 +142,77 @@ def search(
     explanations = [Explanation(chosen=chosen, frame=frame, log_weight=w) for chosen, w in weighed.items()]
     if not stay:
         explanations = _at_own_solutions(model, explanations, prior, should_stop)
+    if whole and not (should_stop and should_stop()):
+        explanations += _with_variants(model, frame, weighed, prior, should_stop)
     return Posterior(explanations=_normalised(explanations), frame=frame)
+
+
+def _with_variants(
+    model: Model,
+    base: Frame,
+    weighed: dict[tuple[int, ...], float],
+    prior: CountPrior,
+    should_stop: Callable[[], bool] | None,
+) -> list[Explanation]:
+    """Explanations that change the model, each alone and with further causes beside it."""
+    best = max(weighed, key=lambda chosen: weighed[chosen])
+    sizes = np.array([base.size(best, index).mean for index in best])
+    left = base.residual - base.white[:, list(best)] @ sizes
+    spoilt: dict[tuple[CauseKind, Place], Variant] = {}
+    for residual in (base.residual, left):
+        for variant in spoilt_variants(base.linear, residual):
+            key = (variant.mark.kind, variant.mark.place)
+            if key not in spoilt or variant.gain > spoilt[key].gain:
+                spoilt[key] = variant
+    likely = sorted((v for v in spoilt.values() if v.gain > VARIANT_GAIN), key=lambda v: -v.gain)[:MOST_VARIANTS]
+    likely += _closed_worth_weighing(model, base)
+    found: list[Explanation] = []
+    for variant in likely:
+        if should_stop and should_stop():
+            break
+        found += _weigh_variant(variant, base, prior, len(model.layout.job.gauges), should_stop)
+    return found
+
+
+def _closed_worth_weighing(model: Model, base: Frame) -> list[Variant]:
+    """Shut runs that explain the readings better than the drawing does, before any other cause is allowed for."""
+    found = []
+    for variant in closed_variants(model):
+        linear = variant.model.linearise(first_points(model.layout, variant.model.spells))
+        linear = variant.model.linearise(variant.model.moved(linear, np.zeros(linear.row_count)))
+        gain = make_frame(linear, []).log_evidence_of_none - base.log_evidence_of_none
+        if gain > VARIANT_GAIN:
+            found.append(replace(variant, gain=gain))
+    return sorted(found, key=lambda variant: -variant.gain)[:MOST_VARIANTS]
+
+
+def _weigh_variant(
+    variant: Variant, base: Frame, prior: CountPrior, places: int, should_stop: Callable[[], bool] | None
+) -> list[Explanation]:
+    """One changed model, alone and with up to two causes more."""
+    model = variant.model
+    start = base.linear if variant.mark.spoils else model.linearise(first_points(model.layout, model.spells))
+    linear = model.linearise([state.point for state in start.states], applied=start.applied)
+    linear = model.linearise(model.moved(linear, np.zeros(linear.row_count)))
+    frame = _pruned(make_frame(linear, all_marks(View(model, linear))))
+    if variant.mark.spoils:
+        frame = frame.only([i for i, mark in enumerate(frame.marks) if variant.mark.own[0] not in mark.own])
+    further = CountPrior(
+        of=tuple((count + 1) * share for count, share in enumerate(prior.of[1:])), other_kinds=prior.other_kinds
+    )
+    weighed = _weigh(frame, further, should_stop)
+    number = len(frame.marks)
+    mark = replace(variant.mark, vector=np.zeros(linear.row_count))
+    with_mark = make_frame(linear, [*frame.marks, mark])
+    kinds = len({mark.kind for mark in base.marks}) + prior.other_kinds
+    own = float(np.log(mark.share / kinds / places)) + mark.log_jacobian
+    scale = frame.log_evidence_of_none - base.log_evidence_of_none
+    top = max(weighed.values())
+    return [
+        Explanation(chosen=(*chosen, number), frame=with_mark, log_weight=weight + own + scale)
+        for chosen, weight in weighed.items()
+        if weight > top - KEPT_NATS
+    ]
 
 
 def shared_frame(model: Model, points: Sequence[Point], kinds: Collection[CauseKind] | None = None) -> Frame:
@@ -202,7 +277,7 @@ def set_log_prior(shares: NDArray[np.float64], prior: CountPrior, chosen: Sequen
 
 def _weigh(frame: Frame, prior: CountPrior, should_stop: Callable[[], bool] | None) -> dict[tuple[int, ...], float]:
     """Log weight of every set worth listing, by its sorted marks; evidence of none is taken as the zero of the scale."""
-    shares = mark_shares(frame.marks)
+    shares = mark_shares(frame.marks, prior.other_kinds)
     weights: dict[tuple[int, ...], float] = {(): set_log_prior(shares, prior, ())}
     if not frame.marks or prior.most < 1:
         return weights
@@ -303,7 +378,7 @@ def _at_own_solutions(
     """The leading explanations linearised again, each at its own solution."""
     ordered = sorted(explanations, key=lambda e: -e.log_weight)
     base = ordered[0].frame
-    shares = mark_shares(base.marks)
+    shares = mark_shares(base.marks, prior.other_kinds)
     out: list[Explanation] = []
     for rank, e in enumerate(ordered):
         near = e.log_weight > ordered[0].log_weight - OWN_NATS

@@ -115,6 +115,7 @@ def vapour_places(model: Model, frame: Frame, chosen: tuple[int, ...]) -> tuple[
         One for each stretch of pipe that is below, at its worst point.
     """
     worst: dict[Place, VapourFound] = {}
+    model = frame.linear.model
     for index, spell in enumerate(model.spells):
         vapour_pa = float(liquid_at(model.layout.job.liquid, spell.temperature_k).vapour_pressure_pa)
         if not np.isfinite(vapour_pa):

@@ -7,6 +7,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.special import ndtr
 
 from headledger.diagnosis.budget import OWN_CALIBRATION, InputKind, UncertainInput, instrument_of
 from headledger.diagnosis.estimate import FREE_VELOCITY_M_S, Model
@@ -129,7 +130,10 @@ def own_error(model: Model, explanation: Explanation, gauge: int) -> OwnError | 
     rows, spells = frame.linear.gauge_rows(gauge)
     if not rows.size:
         return None
+    model = frame.linear.model
     columns, widening = own_inputs(model, gauge)
+    if any(frame.marks[i].spoils and gauge in frame.marks[i].own for i in explanation.chosen):
+        return _error_of_spoilt(model, explanation, gauge, columns, widening)
     curve = frame.linear.calibration[np.ix_(rows, columns)]
     widened = _Widened(frame, columns, widening)
     weights, mean_pa, covariance = _error_by_size(frame, explanation.chosen, gauge, rows, curve, widened)
@@ -156,6 +160,27 @@ def own_error(model: Model, explanation: Explanation, gauge: int) -> OwnError | 
         sd_pa=np.sqrt(deviation**2 + spread),
         outside_by_spell=by_spell,
         left_fraction=np.sqrt(deviation**2 + spread) / prior_sd,
+    )
+
+
+def _error_of_spoilt(
+    model: Model, explanation: Explanation, gauge: int, columns: NDArray[np.int64], widening: Array
+) -> OwnError:
+    """Own error of a gauge whose readings say nothing any more: what it reads less what all else says that it should."""
+    expected = expected_readings(model, explanation, gauge)
+    rows, spells = explanation.frame.linear.gauge_rows(gauge)
+    mean = np.array([model.spells[s].reading_pa[gauge] for s in spells]) - expected.value_pa
+    deviation = np.maximum(expected.sd_pa, 1e-9)
+    noun = model.layout.job.gauges[gauge]
+    tolerance = np.array([noun.tolerance_at(float(value)) for value in expected.value_pa])
+    outside = 1.0 - (ndtr((tolerance - mean) / deviation) - ndtr((-tolerance - mean) / deviation))
+    curve = explanation.frame.linear.calibration[np.ix_(rows, columns)]
+    return OwnError(
+        outside_probability=float(outside.max()),
+        mean_pa=mean,
+        sd_pa=deviation,
+        outside_by_spell=outside,
+        left_fraction=deviation / np.sqrt(((curve * widening) ** 2).sum(axis=1)),
     )
 
 
@@ -264,7 +289,7 @@ def judge_gauge(model: Model, posterior: Posterior, gauge: int) -> Judged:
 def why_unchecked(model: Model, posterior: Posterior, gauge: int, index: int) -> str:
     """What leaves the pressure at a gauge open in a spell, as the end of a sentence."""
     layout, linear = model.layout, posterior.leading.frame.linear
-    spell, state = model.spells[index], linear.states[index]
+    spell, state = linear.model.spells[index], linear.states[index]
     station = layout.station_index[layout.job.gauges[gauge].station]
     part = state.graph.part
     others = [
@@ -295,7 +320,7 @@ def _flow_sd_without(model: Model, posterior: Posterior, gauge: int, index: int)
         readings[gauge] = np.nan
         return replace(spell, reading_pa=readings)
 
-    rest = Model(model.layout, [silent(spell) for spell in model.spells])
+    rest = Model(model.layout, [silent(spell) for spell in linear.model.spells])
     without = rest.linearise([state.point for state in linear.states], applied=linear.applied)
     return rest.flow_sd_m3_s(without, index)
 
@@ -376,6 +401,7 @@ def expected_readings(model: Model, explanation: Explanation, gauge: int) -> Exp
     ``(WᵀW)⁻¹ Wᵀ e`` their residual from that prediction; the gauge's own calibration and noise are then taken off.
     """
     frame = explanation.frame
+    model = frame.linear.model
     rows, spells = frame.linear.gauge_rows(gauge)
     columns, _ = own_inputs(model, gauge)
     curve = frame.linear.calibration[np.ix_(rows, columns)]
@@ -383,7 +409,7 @@ def expected_readings(model: Model, explanation: Explanation, gauge: int) -> Exp
     inverse = np.linalg.inv(whitened.T @ whitened)
     residual = frame.residual.copy()
     readings = np.array([model.spells[s].reading_pa[gauge] for s in spells])
-    noise = np.array([model.spells[s].noise_pa[gauge] for s in spells])
+    noise = frame.linear.noise_pa(gauge)
     covariance = inverse - curve @ curve.T - np.diag(noise**2)
     for index in explanation.chosen:
         if gauge in frame.marks[index].own:

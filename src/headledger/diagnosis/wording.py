@@ -140,6 +140,13 @@ def _statement(model: Model, finding: Finding) -> str:
         return f"{at} drifts {way} by {rate} an hour from about {clock(model, finding.mark.start_s)} on."
     if finding.kind is CauseKind.STEP and unit and finding.mark.start_s is not None:
         return f"{at} jumps to {amount(abs(size), unit)} {direction} at about {clock(model, finding.mark.start_s)} and stays there."
+    if finding.kind is CauseKind.FROZEN:
+        since = "" if finding.mark.start_s is None else f" from about {clock(model, finding.mark.start_s)} on"
+        return f"{at} does not follow what happens around it{since}: stuck, or its own valve is shut."
+    if finding.kind is CauseKind.AT_LIMIT:
+        return f"{at} stands at the end of its range: what it should read lies beyond, and it says no more than that."
+    if finding.kind is CauseKind.CLOSED_OFF:
+        return f"{at} looks shut: what lies behind it keeps its own head and does not follow the rest."
     if finding.kind is CauseKind.SWAPPED:
         return f"{at} look exchanged: each logs what the other should read."
     return _pipe_statement(model, finding, at, size)

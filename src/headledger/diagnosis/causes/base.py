@@ -46,6 +46,8 @@ class Mark:
         Head that a unit of its size takes in every run, spell by spell; empty for what takes none. [m]
     start_s : float or None
         When it begins, where it does not hold all along. [s since 1970-01-01 UTC]
+    spoils : bool
+        Whether readings of its gauge say nothing of the pressure any more; its `vector` is then nothing.
     noise_factor : float
         By which it stretches the noise of its gauges. [-]
     form : str
@@ -64,6 +66,7 @@ class Mark:
     unit: Unit | None = None
     drops_m: tuple[Array, ...] = ()
     start_s: float | None = None
+    spoils: bool = False
     noise_factor: float = 1.0
     form: str = ""
 
