@@ -104,7 +104,8 @@ def check_job(
     except np.linalg.LinAlgError as error:
         raise JobError([_too_far_apart(job)]) from error
     findings = sorted(
-        [*list_findings(posterior), *vapour_findings(model, posterior)], key=lambda finding: -finding.probability
+        [*list_findings(posterior), *vapour_findings(model, posterior)],
+        key=lambda finding: -round(finding.probability, 2),
     )
     tell("judging gauges", 0.85)
     judged = [judge_gauge(model, posterior, gauge) for gauge in range(layout.gauge_count)]

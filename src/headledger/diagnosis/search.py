@@ -21,7 +21,7 @@ from headledger.diagnosis.priors import CountPrior, mark_shares
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.diagnosis.starting import first_points
 from headledger.diagnosis.state import Point
-from headledger.diagnosis.variants import VARIANT_KINDS, Variant, closed_variants, spoilt_variants
+from headledger.diagnosis.variants import VARIANT_KINDS, Variant, closed_variants, spoilt_variants, vapour_variants
 from headledger.statistics.sizes import NODES, log_sum
 
 Array = NDArray[np.float64]
@@ -165,19 +165,26 @@ def _with_variants(
             if key not in spoilt or variant.gain > spoilt[key].gain:
                 spoilt[key] = variant
     likely = sorted((v for v in spoilt.values() if v.gain > VARIANT_GAIN), key=lambda v: -v.gain)[:MOST_VARIANTS]
-    likely += _closed_worth_weighing(model, base)
+    likely += _worth_weighing(model, base, [*closed_variants(model), *vapour_variants(base.linear)])
     found: list[Explanation] = []
     for variant in likely:
         if should_stop and should_stop():
             break
-        found += _weigh_variant(variant, base, prior, len(model.layout.job.gauges), should_stop)
+        found += _weigh_variant(variant, base, prior, _place_count(model, variant.mark.kind), should_stop)
     return found
 
 
-def _closed_worth_weighing(model: Model, base: Frame) -> list[Variant]:
-    """Shut runs that explain the readings better than the drawing does, before any other cause is allowed for."""
+def _place_count(model: Model, kind: CauseKind) -> int:
+    """At how many places a kind of changed model may sit."""
+    job = model.layout.job
+    counts = {CauseKind.CLOSED_OFF: len(job.runs), CauseKind.VAPOUR: len(job.stations)}
+    return counts.get(kind, len(job.gauges))
+
+
+def _worth_weighing(model: Model, base: Frame, variants: Sequence[Variant]) -> list[Variant]:
+    """Other ways for the system to stand that explain the readings better than the drawing, before any other cause is allowed for."""
     found = []
-    for variant in closed_variants(model):
+    for variant in variants:
         linear = variant.model.linearise(first_points(model.layout, variant.model.spells))
         linear = variant.model.linearise(variant.model.moved(linear, np.zeros(linear.row_count)))
         gain = make_frame(linear, []).log_evidence_of_none - base.log_evidence_of_none

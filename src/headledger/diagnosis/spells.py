@@ -6,6 +6,7 @@ state to the next, is left out. A slow change of all heads together is no bar: t
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from itertools import pairwise
@@ -72,6 +73,13 @@ class Spell:
     stated: StatedSpell | None = None
 
 
+NOTICED = 1.0
+"""Change of a column, in its own units of what would be noticed, that counts as one."""
+
+FEWEST_TO_OUTVOTE = 3
+"""With fewer gauges than this, none can be told to move alone."""
+
+
 def find_spells(layout: Layout, timeline: Timeline) -> tuple[Spell, ...]:
     """Spells of a log, in time order: those stated as given, the rest found.
 
@@ -128,6 +136,7 @@ def _found(layout: Layout, timeline: Timeline, first: int, last: int) -> list[Sp
     pieces = _pieces(first, last)
     signal = _signal(layout, timeline, pieces)
     cuts = best_cuts(signal, penalty=12.0 + 4.0 * signal.shape[1])
+    cuts = _without_lone_changes(cuts, signal[:, : layout.gauge_count], signal[:, layout.gauge_count :])
     spans = [(pieces[a], pieces[b]) for a, b in pairwise(cuts)]
     spans = [span for span in spans if _is_settled(layout, timeline, span)]
     if not spans:
@@ -139,6 +148,29 @@ def _found(layout: Layout, timeline: Timeline, first: int, last: int) -> list[Sp
         Spell(kind=kind, first=a, last=b)
         for (a, b), kind in zip(trimmed, _kinds(layout, timeline, trimmed), strict=True)
     ]
+
+
+def _without_lone_changes(cuts: Sequence[int], gauges: Array, others: Array) -> list[int]:
+    """Cuts at which more than one gauge changes against the rest, or a flow does: one gauge alone that moves is no change of flow.
+
+    Parameters
+    ----------
+    cuts : sequence of int
+        Ends included.
+    gauges, others : ndarray, shape (pieces, columns)
+        Each in units of what would be noticed.
+    """
+    if gauges.shape[1] < FEWEST_TO_OUTVOTE:
+        return list(cuts)
+    kept = [cuts[0]]
+    for at, after in pairwise(cuts[1:]):
+        before = slice(kept[-1], at)
+        behind = slice(at, after)
+        moved = np.abs(gauges[behind].mean(axis=0) - gauges[before].mean(axis=0)) > NOTICED
+        flows = np.abs(others[behind].mean(axis=0) - others[before].mean(axis=0)) > NOTICED
+        if moved.sum() > 1 or flows.any():
+            kept.append(at)
+    return [*kept, cuts[-1]]
 
 
 def _typical_length(spans: list[tuple[int, int]]) -> float:

@@ -69,6 +69,8 @@ def vapour_findings(model: Model, posterior: Posterior) -> tuple[Finding, ...]:
     weight = 0.0
     for explanation in posterior.explanations[:MOST_EXPLANATIONS]:
         weight += explanation.probability
+        if any(kind is CauseKind.VAPOUR for kind, _ in explanation.keys):
+            continue
         for found in vapour_places(model, explanation.frame, explanation.chosen):
             probability[found.place] = probability.get(found.place, 0.0) + explanation.probability * found.probability
             told.setdefault(found.place, found)
@@ -96,7 +98,11 @@ def vapour_findings(model: Model, posterior: Posterior) -> tuple[Finding, ...]:
                 ),
             )
         )
-    return tuple(f for f in sorted(findings, key=lambda f: -f.probability) if f.probability >= WORTH_TELLING)
+    known = {
+        place for explanation in posterior.explanations for kind, place in explanation.keys if kind is CauseKind.VAPOUR
+    }
+    new = [f for f in findings if f.probability >= WORTH_TELLING and f.place not in known]
+    return tuple(sorted(new, key=lambda f: -f.probability))
 
 
 def vapour_places(model: Model, frame: Frame, chosen: tuple[int, ...]) -> tuple[VapourFound, ...]:

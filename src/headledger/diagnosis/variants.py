@@ -14,6 +14,7 @@ from numpy.typing import NDArray
 
 from headledger.diagnosis.causes.base import Mark
 from headledger.diagnosis.estimate import Linear, Model
+from headledger.diagnosis.layout import liquid_at
 from headledger.diagnosis.means import SpellMeans
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.plant.gauges import Gauge
@@ -21,13 +22,16 @@ from headledger.statistics.sizes import SizePrior, log_sum
 
 Array = NDArray[np.float64]
 
-VARIANT_KINDS = (CauseKind.FROZEN, CauseKind.AT_LIMIT, CauseKind.CLOSED_OFF)
+VARIANT_KINDS = (CauseKind.FROZEN, CauseKind.AT_LIMIT, CauseKind.CLOSED_OFF, CauseKind.VAPOUR)
 
 WIDE_SPANS = 100.0
 """Noise of a spoilt reading, in spans of its gauge: its row weighs nothing."""
 
 STUCK_TOLERANCES = (0.02, 0.3)
 """How far a stuck reading wanders, in tolerances: not at all (a stuck pointer or output), or slowly (its own valve shut)."""
+
+VAPOUR_MARGIN_PA, VAPOUR_HEAD_SD_M = 2_000.0, 0.05
+"""A station is taken as filled with vapour up to this far above vapour pressure, and its head is then known this well. [Pa], [m]"""
 
 LIMIT_SHARE = 0.003
 """A mean within this part of the span of an end of the range is at it. [-]"""
@@ -167,7 +171,7 @@ def _spoilt(
 
 
 def closed_variants(model: Model) -> list[Variant]:
-    """Runs that are shut against the drawing, one variant each, where that cuts off a gauge.
+    """Runs that are shut against the drawing, one variant each: where that cuts off a gauge, or leaves a loop with one way less.
 
     Parameters
     ----------
@@ -186,7 +190,7 @@ def closed_variants(model: Model) -> list[Variant]:
             continue
         shut = [replace(spell, is_open=_without(spell.is_open, run)) for spell in model.spells]
         before, after = layout.graph(model.spells[0].is_open), layout.graph(shut[0].is_open)
-        if after.parts == before.parts or not _parts_gauges(after.part, tapped):
+        if after.parts > before.parts and not _parts_gauges(after.part, tapped):
             continue
         mark = Mark(
             kind=CauseKind.CLOSED_OFF,
@@ -196,6 +200,71 @@ def closed_variants(model: Model) -> list[Variant]:
         )
         found.append(Variant(mark=mark, model=Model(layout, shut), gain=float("nan")))
     return found
+
+
+def vapour_variants(linear: Linear) -> list[Variant]:
+    """The column parted by vapour: stations whose pressure would lie at or below vapour pressure stand at it, and tie nothing.
+
+    Parameters
+    ----------
+    linear : Linear
+
+    Returns
+    -------
+    list of Variant
+        None or one, at the place where the pressure would be the lowest.
+    """
+    model, layout = linear.model, linear.model.layout
+    height = layout.station_elevation_m
+    changed: list[SpellMeans] = []
+    lowest: tuple[float, int] = (np.inf, -1)
+    for index, spell in enumerate(model.spells):
+        state = linear.states[index]
+        vapour_pa = float(liquid_at(layout.job.liquid, spell.temperature_k).vapour_pressure_pa)
+        computed = layout.barometer_pa + state.head_weight_pa_m * (state.head_m - height)
+        said = _said_pa(linear, index)
+        parted = np.minimum(computed, said) < vapour_pa + VAPOUR_MARGIN_PA
+        if not np.isfinite(vapour_pa) or not parted.any() or parted.all():
+            changed.append(spell)
+            continue
+        lowest = min(lowest, (float(np.min(computed)), int(np.argmin(computed))))
+        level = np.where(parted, height + (vapour_pa - layout.barometer_pa) / state.head_weight_pa_m, spell.level_m)
+        unsure = tuple(bool(parted[start] or parted[end]) for start, end in layout.ends)
+        changed.append(
+            replace(
+                spell,
+                level_m=level,
+                level_sd_m=np.where(parted, VAPOUR_HEAD_SD_M, spell.level_sd_m),
+                is_unsure=tuple(
+                    a or b for a, b in zip(unsure, spell.is_unsure or (False,) * layout.run_count, strict=True)
+                ),
+            )
+        )
+    if lowest[1] < 0:
+        return []
+    mark = Mark(
+        kind=CauseKind.VAPOUR,
+        place=Place(station=layout.job.stations[lowest[1]].name),
+        vector=np.zeros(0),
+        prior=SizePrior(least=1.0, most=1.0, negative=False),
+    )
+    return [Variant(mark=mark, model=Model(layout, changed), gain=float("nan"))]
+
+
+def _said_pa(linear: Linear, index: int) -> Array:
+    """Lowest absolute pressure at each station that a gauge there says, infinite where none does. [Pa]"""
+    layout, spell, state = linear.model.layout, linear.model.spells[index], linear.states[index]
+    said = np.full(len(layout.job.stations), np.inf)
+    for gauge, noun in enumerate(layout.job.gauges):
+        if noun.is_differential or not np.isfinite(spell.reading_pa[gauge]):
+            continue
+        at = layout.station_index[noun.station]
+        head = (
+            spell.reading_pa[gauge] - layout.taps.constant_pa[gauge]
+        ) / state.head_weight_pa_m + layout.taps.column_m[gauge]
+        pressure = layout.barometer_pa + state.head_weight_pa_m * (head - layout.station_elevation_m[at])
+        said[at] = min(said[at], float(pressure))
+    return said
 
 
 def _without(is_open: Sequence[bool], run: int) -> tuple[bool, ...]:

@@ -145,6 +145,8 @@ def _statement(model: Model, finding: Finding) -> str:
         return f"{at} does not follow what happens around it{since}: stuck, or its own valve is shut."
     if finding.kind is CauseKind.AT_LIMIT:
         return f"{at} stands at the end of its range: what it should read lies beyond, and it says no more than that."
+    if finding.kind is CauseKind.VAPOUR:
+        return f"{at}: the column is parted by vapour there: the pressure would have to fall to the liquid's vapour pressure or below."
     if finding.kind is CauseKind.CLOSED_OFF:
         return f"{at} looks shut: what lies behind it keeps its own head and does not follow the rest."
     if finding.kind is CauseKind.SWAPPED:
