@@ -124,7 +124,7 @@ def _summary(layout: Layout, timeline: Timeline, spell: Spell) -> _Summary:
     reading = timeline.reading_pa[cut]
     batches = int(np.clip((spell.last - spell.first) // 3, FEWEST_BATCHES, MOST_BATCHES))
     single = np.array([not gauge.is_differential for gauge in layout.job.gauges])
-    common = _common(reading, single)
+    common = common_motion(reading, single)
     rest = reading - np.where(single[None, :], common[:, None], 0.0)
     ok = np.isfinite(rest)
     with np.errstate(invalid="ignore", divide="ignore"):
@@ -149,7 +149,7 @@ def _summary(layout: Layout, timeline: Timeline, spell: Spell) -> _Summary:
     )
 
 
-def _common(reading: Array, single: NDArray[np.bool_]) -> Array:
+def common_motion(reading: Array, single: NDArray[np.bool_]) -> Array:
     """What all gauges do together, block by block, about its own mean over the spell. [Pa]"""
     if not single.any() or reading.shape[0] < 2:
         return np.zeros(reading.shape[0])

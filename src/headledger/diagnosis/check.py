@@ -17,6 +17,8 @@ from headledger.diagnosis.report import cause_found, gauge_found, spells_found
 from headledger.diagnosis.result import CheckResult, InputFile, Trend
 from headledger.diagnosis.search import search
 from headledger.diagnosis.spells import find_spells, unread_spells
+from headledger.diagnosis.trait_findings import trait_findings
+from headledger.diagnosis.traits import find_traits, undone
 from headledger.diagnosis.vapour import vapour_findings
 from headledger.diagnosis.verdicts import judge_gauge
 from headledger.errors import JobError, NothingToCheckError, Problem
@@ -91,6 +93,11 @@ def check_job(
     timeline = read_timeline(layout, digests)
     tell("finding spells", 0.45)
     stretches = find_spells(layout, timeline)
+    traits = find_traits(layout, timeline, stretches)
+    right = undone(digests, traits, timeline)
+    if right is not None:
+        timeline = read_timeline(layout, right)
+        stretches = find_spells(layout, timeline)
     pieces = spell_pieces(layout, timeline, stretches)
     if not pieces:
         raise NothingToCheckError(
@@ -103,8 +110,9 @@ def check_job(
         posterior = search(model, should_stop=should_stop)
     except np.linalg.LinAlgError as error:
         raise JobError([_too_far_apart(job)]) from error
+    seen, unseen = trait_findings(model, posterior, traits)
     findings = sorted(
-        [*list_findings(posterior), *vapour_findings(model, posterior)],
+        [*list_findings(posterior), *seen, *vapour_findings(model, posterior)],
         key=lambda finding: -round(finding.probability, 2),
     )
     tell("judging gauges", 0.85)
@@ -113,7 +121,7 @@ def check_job(
         job=job,
         inputs=_inputs(job, digests),
         spells=spells_found(model, posterior, findings),
-        clean_probability=posterior.clean_probability,
+        clean_probability=posterior.clean_probability * unseen,
         gauges=tuple(gauge_found(model, posterior, findings, gauge, one) for gauge, one in enumerate(judged)),
         causes=tuple(cause_found(model, finding) for finding in findings),
         rejects=tuple(reject for digest in digests for reject in digest.rejects),

@@ -47,6 +47,8 @@ class Timeline:
         nan where a run has no such column. [-]
     remarks : tuple of str
         Conversions made and columns not found, a sentence each.
+    gauge_files, flow_files : tuple of str
+        The log that each gauge and each meter was read from; empty where none has it.
     """
 
     width_s: float
@@ -64,6 +66,8 @@ class Timeline:
     speed_ratio: Array
     open_fraction: Array
     remarks: tuple[str, ...] = ()
+    gauge_files: tuple[str, ...] = ()
+    flow_files: tuple[str, ...] = ()
 
     @property
     def middle_s(self) -> Array:
@@ -101,6 +105,11 @@ class _Columns:
     def names(self) -> list[str]:
         """Names of all columns as the logs give them."""
         return [name for digest in self.digests for name in digest.columns]
+
+    def file_of(self, name: str | None) -> str:
+        """The log that has a column; empty where none has."""
+        found = self._where.get(name.strip().casefold()) if name else None
+        return found[0].file if found else ""
 
     def get(self, name: str | None) -> _Column | None:
         """A column by name; None where no log has it."""
@@ -175,6 +184,8 @@ def read_timeline(layout: Layout, digests: Sequence[Digest]) -> Timeline:
         speed_ratio=speed,
         open_fraction=opened,
         remarks=tuple(remarks),
+        gauge_files=tuple(columns.file_of(gauge.column) for gauge in job.gauges),
+        flow_files=tuple(columns.file_of(run.flow_column) for run in job.runs),
     )
 
 

@@ -21,6 +21,7 @@ from headledger.diagnosis.priors import CountPrior, mark_shares
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.diagnosis.starting import first_points
 from headledger.diagnosis.state import Point
+from headledger.diagnosis.traits import TRAIT_KINDS
 from headledger.diagnosis.variants import VARIANT_KINDS, Variant, closed_variants, spoilt_variants, vapour_variants
 from headledger.statistics.sizes import NODES, log_sum
 
@@ -84,10 +85,13 @@ class Posterior:
         The most probable first; probabilities sum to 1.
     frame : Frame
         In which all of them were first weighed.
+    other_kinds : int
+        Kinds of cause that were weighed without marks in that frame.
     """
 
     explanations: tuple[Explanation, ...]
     frame: Frame
+    other_kinds: int = 0
 
     @property
     def clean_probability(self) -> float:
@@ -131,7 +135,7 @@ def search(
     """
     stay = points is not None
     whole = kinds is None and not stay
-    prior = prior or CountPrior(other_kinds=len(VARIANT_KINDS) if whole else 0)
+    prior = prior or CountPrior(other_kinds=len(VARIANT_KINDS) + len(TRAIT_KINDS) if whole else 0)
     frame = shared_frame(model, points if points is not None else first_points(model.layout, model.spells), kinds)
     # sets of two are enough to see where to linearise
     weighed = _weigh(frame, prior if stay else CountPrior(of=prior.of[:3]), should_stop)
@@ -144,7 +148,7 @@ def search(
         explanations = _at_own_solutions(model, explanations, prior, should_stop)
     if whole and not (should_stop and should_stop()):
         explanations += _with_variants(model, frame, weighed, prior, should_stop)
-    return Posterior(explanations=_normalised(explanations), frame=frame)
+    return Posterior(explanations=_normalised(explanations), frame=frame, other_kinds=prior.other_kinds)
 
 
 def _with_variants(

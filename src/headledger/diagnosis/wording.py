@@ -90,6 +90,23 @@ def cause_sentence(model: Model, finding: Finding) -> str:
     return (finding.statement or _statement(model, finding)) + _rival_clause(finding)
 
 
+def trait_statement(model: Model, kind: CauseKind, place: Place, size: float) -> str:
+    """What the log says between and within its spells, in words."""
+    at = place_words(place)
+    if kind is CauseKind.NOISY:
+        return (
+            f"{at} scatters far more than the gauges around it: look at its wiring, its damping and its impulse line."
+        )
+    if kind is CauseKind.SLUGGISH:
+        return f"{at} follows every change late, with a time constant of about {size:.0f} s: a plugged line, or heavy damping."
+    if kind is CauseKind.CLOCK_OFFSET:
+        way = "late" if size > 0.0 else "early"
+        verb = "is" if place.gauge else "are"
+        return f"The log of {at} {verb} stamped {abs(size):.0f} s {way} against the others; it was set right before the rest was judged."
+    rate = amount(abs(size) * SECONDS_PER_HOUR, model.layout.job.display.pressure)
+    return f"At rest the pressure falls everywhere alike, by {rate} an hour: liquid leaves the section, or it cools."
+
+
 def vapour_statement(model: Model, place: Place, spell: int, *, pressure_pa: float, vapour_pressure_pa: float) -> str:
     """A place whose computed pressure lies below vapour pressure, in words."""
     unit = model.layout.job.display.pressure
