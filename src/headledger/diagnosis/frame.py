@@ -19,6 +19,10 @@ from headledger.statistics.sizes import NODES, SizePosterior, SizePriors, log_ga
 Array = NDArray[np.float64]
 
 
+LOSS_KINDS = frozenset({CauseKind.BLOCKAGE, CauseKind.LOW_LOSS})
+"""Causes that change a run's loss."""
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Frame:
     """Marks of causes on one linearised model.
@@ -169,13 +173,15 @@ def own_frame(model: Model, shared: Frame, chosen: Sequence[int]) -> tuple[Frame
     frame, index = shared, tuple(chosen)
     wanted = [(shared.marks[i].key, shared.marks[i].form) for i in chosen]
     scaled = _with_noise(model, [shared.marks[i] for i in chosen])
-    # all is near linear but what bends the hydraulics, and that is met by a second round
-    bends = any(shared.marks[i].kind in (CauseKind.DENSITY_ERROR, CauseKind.FLOW_METER_ERROR) for i in chosen)
-    for _ in range(2 if bends else 1):
+    # all is near linear but what bends the hydraulics, and that is met by further rounds
+    kinds = {shared.marks[i].kind for i in chosen}
+    bends = bool(kinds & {CauseKind.DENSITY_ERROR, CauseKind.FLOW_METER_ERROR})
+    rounds = 4 if kinds & LOSS_KINDS and loss_bends(shared.linear) else 2 if bends else 1
+    for _ in range(rounds):
         sizes = np.array([frame.size(index, i).mean for i in index])
         vectors = np.column_stack([frame.marks[i].vector for i in index])
-        points = model.moved(frame.linear, vectors @ (sizes - _applied_sizes(frame, index)))
-        frame, index = _frame_at(scaled, points, wanted, [frame.marks[i] for i in index], sizes)
+        points = model.moved(frame.linear, vectors @ (sizes - applied_sizes(frame, index)))
+        frame, index = _frame_at(scaled, points, rounds > 2, wanted, [frame.marks[i] for i in index], sizes)
     return frame, index
 
 
@@ -194,7 +200,17 @@ def _with_noise(model: Model, marks: Sequence[Mark]) -> Model:
     return Model(model.layout, [quieter(spell) for spell in model.spells])
 
 
-def _applied_sizes(frame: Frame, index: Sequence[int]) -> Array:
+def loss_bends(linear: Linear) -> bool:
+    """Whether flows follow from losses, so that a changed loss moves them and is more than a step in the heads."""
+    for spell, state in zip(linear.model.spells, linear.states, strict=True):
+        if state.point.flow_m3_s.size:
+            unmetered = not np.isfinite(spell.flow_m3_s[state.graph.basis]).all()
+            if state.graph.loop.shape[0] or unmetered:
+                return True
+    return False
+
+
+def applied_sizes(frame: Frame, index: Sequence[int]) -> Array:
     """Sizes at which the marks of a set are already allowed for in a frame's states."""
     applied = frame.linear.applied
     return np.array([_applied_size(frame.marks[i], frame, applied) for i in index])
@@ -204,6 +220,8 @@ def _applied_size(mark: Mark, frame: Frame, applied: Applied) -> float:
     """Size at which one mark is already allowed for."""
     if mark.kind is CauseKind.DENSITY_ERROR:
         return applied.density_ratio - 1.0
+    if mark.kind in LOSS_KINDS and applied.loss_k:
+        return mark.size_factor * applied.loss_k.get(frame.linear.model.layout.run_index[mark.place.run], 0.0)
     if mark.kind is CauseKind.FLOW_METER_ERROR and applied.meter_names:
         return dict(applied.meter_names).get(mark.place.run, 1.0) - 1.0
     return 0.0
@@ -212,19 +230,22 @@ def _applied_size(mark: Mark, frame: Frame, applied: Applied) -> float:
 def _frame_at(
     model: Model,
     points: Sequence[Point],
+    bends: bool,
     wanted: Sequence[tuple[tuple[CauseKind, Place], str]],
     before: Sequence[Mark],
     sizes: Array,
 ) -> tuple[Frame, tuple[int, ...]]:
     """Frame of an explanation's marks at its points, with the causes that bend the hydraulics applied at their sizes."""
-    density, meters, names = 1.0, {}, []
+    density, meters, names, losses = 1.0, {}, [], {}
     for mark, size in zip(before, sizes, strict=True):
         if mark.kind is CauseKind.DENSITY_ERROR:
             density = 1.0 + float(size)
         elif mark.kind is CauseKind.FLOW_METER_ERROR:
             meters[model.layout.run_index[mark.place.run]] = 1.0 + float(size)
             names.append((mark.place.run, 1.0 + float(size)))
-    applied = Applied(density_ratio=density, meter_ratio=meters, meter_names=tuple(names))
+        elif mark.kind in LOSS_KINDS and bends:
+            losses[model.layout.run_index[mark.place.run]] = mark.size_factor * float(size)
+    applied = Applied(density_ratio=density, meter_ratio=meters, meter_names=tuple(names), loss_k=losses)
     if meters:
         points = _rescaled(model, points, applied)
     linear = model.linearise(points, applied=applied)

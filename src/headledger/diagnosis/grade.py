@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 
 from headledger.diagnosis.budget import InputKind, input_marks
 from headledger.diagnosis.estimate import Linear, Model, cut_off_sections
-from headledger.diagnosis.frame import Frame
+from headledger.diagnosis.frame import Frame, applied_sizes
 from headledger.diagnosis.result import CauseKind, GradeStep, Place, RunGrade
 from headledger.diagnosis.state import State
 from headledger.statistics.gaussian import Group, own_estimate
@@ -86,7 +86,8 @@ def station_heads(model: Model, frame: Frame, chosen: Sequence[int], index: int)
     shared_mean = white.shared.T @ (frame.residual - white.operator @ (mean_size @ whole))
     rest = group.residual + np.linalg.solve(white.operator, offset)[cut] - mean_size @ whole[:, cut]
     estimate = own_estimate(_with_residual(group, rest), shared_mean)
-    head = state.head_m + own @ estimate + shared @ shared_mean + by_size @ mean_size
+    # what is applied already is in the state's heads
+    head = state.head_m + own @ estimate + shared @ shared_mean + by_size @ (mean_size - applied_sizes(frame, chosen))
     own_covariance, own_by_rows = _own_moments(group)
     moved_by_shared = shared - own @ own_by_rows @ group.shared
     covariance = own @ own_covariance @ own.T

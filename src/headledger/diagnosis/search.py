@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 
 from headledger.diagnosis.causes.base import View
 from headledger.diagnosis.estimate import Model
-from headledger.diagnosis.frame import Frame, all_marks, make_frame, own_frame
+from headledger.diagnosis.frame import LOSS_KINDS, Frame, all_marks, loss_bends, make_frame, own_frame
 from headledger.diagnosis.one_sided import sign_log_weight
 from headledger.diagnosis.priors import CountPrior, mark_shares
 from headledger.diagnosis.result import CauseKind, Place
@@ -390,10 +390,13 @@ def _at_own_solutions(
     ordered = sorted(explanations, key=lambda e: -e.log_weight)
     base = ordered[0].frame
     shares = mark_shares(base.marks, prior.other_kinds)
+    bends = loss_bends(base.linear)
     out: list[Explanation] = []
     for rank, e in enumerate(ordered):
-        near = e.log_weight > ordered[0].log_weight - OWN_NATS
-        if e.chosen and rank < OWN_SOLUTIONS and near and not (should_stop and should_stop()):
+        near = e.log_weight > ordered[0].log_weight - OWN_NATS and rank < OWN_SOLUTIONS
+        # a loss that moves the flows is not judged by what a small one would do
+        near |= bends and len(e.chosen) == 1 and base.marks[e.chosen[0]].kind in LOSS_KINDS
+        if e.chosen and near and not (should_stop and should_stop()):
             frame, chosen = own_frame(model, base, e.chosen)
             weight = (
                 frame.log_evidence_of_none

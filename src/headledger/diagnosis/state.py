@@ -44,11 +44,14 @@ class Applied:
         Read over true, by run. [-]
     meter_names : tuple of (str, float)
         The same by the name of the run.
+    loss_k : dict of int to float
+        Loss coefficients added, by run; negative ones take away. [-]
     """
 
     density_ratio: float = 1.0
     meter_ratio: dict[int, float] = field(default_factory=dict)
     meter_names: tuple[tuple[str, float], ...] = ()
+    loss_k: dict[int, float] = field(default_factory=dict)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -99,6 +102,8 @@ class State:
         Flows of all runs from the independent ones; no columns in a still spell.
     flow_m3_s, drop_m, slope_s_m2, velocity_pa : ndarray, shape (runs,)
         Flow; head lost (a pump's lift is negative); its derivative with flow; velocity pressure. [m³/s], [m], [s/m²], [Pa]
+    added_m : ndarray, shape (runs,)
+        What of `drop_m` is of loss coefficients that causes add. [m]
     column_m : ndarray, shape (runs,)
         Head that a run's own liquid, lighter or heavier than the job's, takes over its fall. [m]
     head_m : ndarray, shape (stations,)
@@ -120,6 +125,7 @@ class State:
     drop_m: Array
     slope_s_m2: Array
     velocity_pa: Array
+    added_m: Array
     column_m: Array
     head_m: Array
     reading_pa: Array
@@ -234,6 +240,12 @@ def evaluate(
         lift, lift_slope = pump_head(polynomial, float(flow[run]), float(spell.speed_ratio[run]))
         drop[run] -= ratio[run] * lift
         slope[run] -= ratio[run] * lift_slope
+    added = np.zeros(layout.run_count)
+    for run, coefficient in (applied.loss_k if applied else {}).items():
+        per_square = ratio[run] * coefficient / (2.0 * layout.gravity_m_s2 * layout.area_m2[run] ** 2)
+        added[run] = per_square * flow[run] * abs(flow[run])
+        slope[run] += 2.0 * per_square * abs(flow[run])
+    drop = drop + added
     column = (1.0 - ratio) * layout.fall_m
     head = graph.heads_m(point.reference_head_m, drop + column)
     velocity = 0.5 * run_density * (flow / layout.area_m2) ** 2
@@ -248,6 +260,7 @@ def evaluate(
         drop_m=drop,
         slope_s_m2=slope,
         velocity_pa=velocity,
+        added_m=added,
         column_m=column,
         head_m=head,
         reading_pa=readings + own_leg * layout.gravity_m_s2 * layout.process_leg_m,

@@ -193,7 +193,7 @@ def _loss_statement(model: Model, finding: Finding, at: str, size: float) -> str
     state = max(states, key=lambda s: abs(float(s.flow_m3_s[run])))
     velocity = float(state.flow_m3_s[run]) / model.layout.area_m2[run]
     unit_pa = state.head_weight_pa_m * velocity**2 / (2.0 * model.layout.gravity_m_s2)
-    expected_pa = abs(float(state.drop_m[run])) * state.head_weight_pa_m
+    expected_pa = abs(float(state.drop_m[run] - state.added_m[run])) * state.head_weight_pa_m
     found_pa = expected_pa + size * unit_pa
     units = model.layout.job.display
     item = model.layout.job.runs[run].item

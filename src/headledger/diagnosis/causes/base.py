@@ -126,8 +126,22 @@ class View:
 
     def least_size(self, vector: Array) -> float:
         """The smallest size that matters: 0.3 of the tolerance at the gauge that feels it most; infinite where none does."""
-        felt = float(np.max(np.abs(vector) / self.tolerance_rows(), initial=0.0))
+        felt = float(np.max(np.abs(self._with_loops_closed(vector)) / self.tolerance_rows(), initial=0.0))
         return SMALLEST_TOLERANCES / felt if felt > 0.0 else np.inf
+
+    def _with_loops_closed(self, vector: Array) -> Array:
+        """What a mark does to the gauges once flows have moved so that every loop closes again."""
+        closed = vector
+        for group, place in zip(self.linear.groups, self.linear.rows, strict=True):
+            loops = slice(place.start + place.count - place.loops, place.start + place.count)
+            if not place.loops or not vector[loops].any():
+                continue
+            within = slice(place.count - place.loops, place.count)
+            moved = -np.linalg.pinv(group.own[within]) @ vector[loops]
+            if closed is vector:
+                closed = vector.copy()
+            closed[place.start : place.start + place.count] += group.own @ moved
+        return closed
 
     def gauge_vector(self, gauge: int, values: Array | float) -> Array:
         """A mark on one gauge's rows alone; `values` one for each of its rows, or one for all."""

@@ -31,7 +31,7 @@ def _greatest(view: View, run: int, drops: list[Array]) -> tuple[float, float]:
     at = int(np.argmax([abs(drop[run]) for drop in drops]))
     state = view.linear.states[at]
     unit = abs(float(drops[at][run]))
-    stated = abs(float(state.drop_m[run])) / unit if unit > 0.0 else 0.0
+    stated = abs(float(state.drop_m[run] - state.added_m[run])) / unit if unit > 0.0 else 0.0
     return unit * state.head_weight_pa_m, stated
 
 
