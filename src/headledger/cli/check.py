@@ -21,8 +21,15 @@ _TO_STDOUT = "-"
 @click.argument("job")
 @click.option("--json", "json_path", metavar="PATH", help="Write the result file to PATH; - writes it to stdout alone.")
 @click.option("--no-color", is_flag=True, help="Print without colour.")
+@click.option(
+    "--answer",
+    "answers",
+    metavar="TEXT",
+    multiple=True,
+    help='What was found on site, such as "zero-check PT-7 = 0.01 bar" or "open-strainer STR-1 = yes"; may be given often.',
+)
 @click.option("-q", "--quiet", is_flag=True, help="No report and no progress: the exit status is the answer.")
-def check(job: str, json_path: str | None, no_color: bool, quiet: bool) -> int:
+def check(job: str, json_path: str | None, no_color: bool, answers: tuple[str, ...], quiet: bool) -> int:
     """Say which gauges of JOB can be believed.
 
     Exit status: 0 nothing is wrong; 1 something is; 2 the job or its logs cannot be used; 3 nothing can be checked;
@@ -35,7 +42,7 @@ def check(job: str, json_path: str | None, no_color: bool, quiet: bool) -> int:
     from headledger.diagnosis.check import check_folder
 
     with ProgressLine(sys.stderr, shown=not quiet) as progress:
-        result = check_folder(folder, on_progress=progress)
+        result = check_folder(folder, answers=answers, on_progress=progress)
     if json_path:
         _write_json(result, json_path)
     if not quiet and json_path != _TO_STDOUT:

@@ -17,7 +17,8 @@ if TYPE_CHECKING:
 
 @click.command("open", short_help="Look at JOB on the screen of the terminal.")
 @click.argument("job", required=False)
-def open_job(job: str | None) -> int:
+@click.option("--answer", "answers", metavar="TEXT", multiple=True, help="What was found on site; as for `check`.")
+def open_job(job: str | None, answers: tuple[str, ...]) -> int:
     """Look at JOB on the screen of the terminal; without JOB, at the folder you are in."""
     from headledger.cli.samples import job_folder
 
@@ -26,7 +27,7 @@ def open_job(job: str | None) -> int:
         raise click.UsageError("`open` needs a terminal; `headledger check JOB` prints the same findings as text.")
     from headledger.tui.app import HeadledgerApp
 
-    app = HeadledgerApp(folder)
+    app = HeadledgerApp(folder, answers=answers)
     app.run()
     return ExitCode.FAULT if app.return_code else status_of(app.ending)
 

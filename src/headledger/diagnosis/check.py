@@ -12,10 +12,12 @@ from headledger.diagnosis.circulation import circulations
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import list_findings
 from headledger.diagnosis.layout import Layout
+from headledger.diagnosis.next_checks import Answer, answered, next_checks
 from headledger.diagnosis.readings import read_timeline
 from headledger.diagnosis.report import cause_found, gauge_found, spells_found
 from headledger.diagnosis.result import CheckResult, InputFile, Trend
 from headledger.diagnosis.search import search
+from headledger.diagnosis.site_actions import parse_answer
 from headledger.diagnosis.spells import find_spells, unread_spells
 from headledger.diagnosis.trait_findings import trait_findings
 from headledger.diagnosis.traits import find_traits, undone
@@ -32,13 +34,19 @@ Progress = Callable[[str, float], None]
 
 
 def check_folder(
-    folder: Path, *, on_progress: Progress | None = None, should_stop: Callable[[], bool] | None = None
+    folder: Path,
+    *,
+    answers: Sequence[str] = (),
+    on_progress: Progress | None = None,
+    should_stop: Callable[[], bool] | None = None,
 ) -> CheckResult:
     """Check the job in a folder.
 
     Parameters
     ----------
     folder : Path
+    answers : sequence of str
+        Results of actions on site, as `parse_answer` reads them.
     on_progress : callable, optional
         Called with what is being done and how far it is, 0 to 1.
     should_stop : callable, optional
@@ -60,13 +68,14 @@ def check_folder(
     job = read_job(folder)
     tell("reading the log", 0.05)
     digests = read_logs(job, on_progress=lambda share: tell("reading the log", 0.05 + 0.35 * share))
-    return check_job(job, digests, on_progress=tell, should_stop=should_stop)
+    return check_job(job, digests, answers=answers, on_progress=tell, should_stop=should_stop)
 
 
 def check_job(
     job: Job,
     digests: Sequence[Digest],
     *,
+    answers: Sequence[str] = (),
     on_progress: Progress | None = None,
     should_stop: Callable[[], bool] | None = None,
 ) -> CheckResult:
@@ -76,7 +85,7 @@ def check_job(
     ----------
     job : Job
     digests : sequence of Digest
-    on_progress, should_stop
+    answers, on_progress, should_stop
         As for `check_folder`.
 
     Returns
@@ -89,6 +98,7 @@ def check_job(
         As for `check_folder`.
     """
     tell = on_progress or (lambda _what, _share: None)
+    found_on_site = [parse_answer(text, job) for text in answers]
     layout = Layout(job)
     timeline = read_timeline(layout, digests)
     tell("finding spells", 0.45)
@@ -110,6 +120,8 @@ def check_job(
         posterior = search(model, should_stop=should_stop)
     except np.linalg.LinAlgError as error:
         raise JobError([_too_far_apart(job)]) from error
+    told = [Answer(action=action, outcome=outcome) for action, outcome in found_on_site]
+    posterior = answered(model, posterior, told)
     seen, unseen = trait_findings(model, posterior, traits)
     findings = sorted(
         [*list_findings(posterior), *seen, *vapour_findings(model, posterior)],
@@ -127,6 +139,8 @@ def check_job(
         rejects=tuple(reject for digest in digests for reject in digest.rejects),
         reject_count=sum(digest.reject_count for digest in digests),
         remarks=(*job.remarks, *timeline.remarks, *unread_spells(job, stretches), *circulations(model)),
+        next_checks=next_checks(model, posterior, findings),
+        answers=tuple(answers),
         trend=Trend(start_s=timeline.start_s, width_s=timeline.width_s, reading_pa=timeline.reading_pa),
     )
 

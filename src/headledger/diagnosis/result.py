@@ -273,6 +273,32 @@ class CauseFound:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class NextCheck:
+    """An action on site that is worth its time.
+
+    Parameters
+    ----------
+    action : str
+    place : Place
+    gain_bits : float
+        Information between its outcome and the work to be done. [bit]
+    minutes : float
+        That it usually takes. [min]
+    separates : tuple of (str, str)
+        Kinds of cause that its outcome tells apart.
+    says, caution : str
+    """
+
+    action: str
+    place: Place
+    gain_bits: float
+    minutes: float
+    separates: tuple[tuple[str, str], ...] = ()
+    says: str = ""
+    caution: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class InputFile:
     """A file that the result rests on."""
 
@@ -322,6 +348,10 @@ class CheckResult:
         What was taken for granted, converted, or could not be used, a sentence each.
     trend : Trend or None
         For the picture of a gauge over time.
+    next_checks : tuple of NextCheck
+        The most information a minute first.
+    answers : tuple of str
+        Results of actions that were taken into account, as they were given.
     """
 
     job: Job
@@ -334,3 +364,5 @@ class CheckResult:
     reject_count: int = 0
     remarks: tuple[str, ...] = ()
     trend: Trend | None = None
+    next_checks: tuple[NextCheck, ...] = ()
+    answers: tuple[str, ...] = ()

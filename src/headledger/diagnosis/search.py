@@ -69,6 +69,10 @@ class Explanation:
     log_weight: float
     probability: float = 0.0
 
+    def weighed(self, log_weight: float) -> Explanation:
+        """The same explanation with another weight."""
+        return replace(self, log_weight=log_weight)
+
     @property
     def keys(self) -> frozenset[tuple[CauseKind, Place]]:
         """Kinds and places of its causes."""
@@ -102,6 +106,10 @@ class Posterior:
     def leading(self) -> Explanation:
         """The most probable explanation."""
         return self.explanations[0]
+
+    def with_explanations(self, explanations: Sequence[Explanation]) -> Posterior:
+        """The same posterior with other weights."""
+        return replace(self, explanations=_normalised(list(explanations)))
 
     def probability(self, key: tuple[CauseKind, Place]) -> float:
         """Probability that a cause of this kind is present at this place."""

@@ -22,7 +22,13 @@ from headledger.statistics.sizes import SizePrior, log_sum
 
 Array = NDArray[np.float64]
 
-VARIANT_KINDS = (CauseKind.FROZEN, CauseKind.AT_LIMIT, CauseKind.CLOSED_OFF, CauseKind.VAPOUR)
+VARIANT_KINDS = (
+    CauseKind.FROZEN,
+    CauseKind.AT_LIMIT,
+    CauseKind.EQUALISED,
+    CauseKind.CLOSED_OFF,
+    CauseKind.VAPOUR,
+)
 
 WIDE_SPANS = 100.0
 """Noise of a spoilt reading, in spans of its gauge: its row weighs nothing."""
@@ -89,6 +95,11 @@ def spoilt_variants(linear: Linear, residual: Array) -> list[Variant]:
             if best is None or one.gain > best.gain:
                 best = one
         found += [best] if best else []
+        if gauge.is_differential:
+            density = zero_log_density(gauge, readings, noise)
+            every = slice(0, None)
+            one = _spoilt(linear, index, CauseKind.EQUALISED, (rows, pieces), every, density, 1.0)
+            found.append(replace(one, gain=density - _log_given_rest(precision, pull, rows)))
         at = np.flatnonzero(_at_limit(gauge, readings))
         if at.size:
             density = limit_log_density(gauge, readings[at], noise[at])
@@ -117,6 +128,13 @@ def stuck_log_density(gauge: Gauge, readings_pa: Array, noise_pa: Array) -> floa
         others = readings_pa.size - 1
         parts.append(-0.5 * (square + others * np.log(2.0 * np.pi) + np.log(weight.sum())) - np.log(deviation).sum())
     return float(log_sum(np.array(parts)) - np.log(len(parts)) - np.log(gauge.span_pa))
+
+
+def zero_log_density(gauge: Gauge, readings_pa: Array, noise_pa: Array) -> float:
+    """Log density of readings about zero, as far as the gauge's own zero may be off: both sides see one pressure."""
+    limit = gauge.accuracy.at(0.0, gauge.range_low_pa, gauge.range_high_pa)
+    deviation = np.hypot(noise_pa, limit / np.sqrt(3.0))
+    return float((-0.5 * (readings_pa / deviation) ** 2 - np.log(deviation) - 0.5 * np.log(2.0 * np.pi)).sum())
 
 
 def _at_limit(gauge: Gauge, readings_pa: Array) -> NDArray[np.bool_]:

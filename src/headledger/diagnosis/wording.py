@@ -90,6 +90,28 @@ def cause_sentence(model: Model, finding: Finding) -> str:
     return (finding.statement or _statement(model, finding)) + _rival_clause(finding)
 
 
+def action_sentence(kind: str, place: Place, separates: Sequence[tuple[str, str]]) -> str:
+    """An action on site in words, and what it would tell apart."""
+    words = {
+        "zero-check": "Isolate and vent {at}, and read its zero",
+        "test-gauge": "Put a test gauge beside {at} and compare",
+        "survey": "Survey the elevation of {at} anew",
+        "vent": "Vent {at} and see whether gas comes",
+        "open-strainer": "Open {at} and look",
+        "stroke-valve": "See how far the valve at {at} is open, and stroke it",
+        "check-meter": "Compare the flow meter of {at} with a second measurement",
+        "check-pump": "Look at the pump at {at}: rotation, speed, suction",
+    }[kind]
+    pairs = [f"{_plain_kind(first)} from {_plain_kind(second)}" for first, second in separates]
+    told = f": it tells {', and '.join(pairs)}" if pairs else ""
+    return f"{words.format(at=place_words(place))}{told}."
+
+
+def _plain_kind(name: str) -> str:
+    """A kind of cause in words; nothing wrong is a kind here."""
+    return "nothing wrong" if name == "none" else kind_words(CauseKind(name))
+
+
 def trait_statement(model: Model, kind: CauseKind, place: Place, size: float) -> str:
     """What the log says between and within its spells, in words."""
     at = place_words(place)
@@ -162,6 +184,14 @@ def _statement(model: Model, finding: Finding) -> str:
         return f"{at} does not follow what happens around it{since}: stuck, or its own valve is shut."
     if finding.kind is CauseKind.AT_LIMIT:
         return f"{at} stands at the end of its range: what it should read lies beyond, and it says no more than that."
+    if finding.kind is CauseKind.CROSSED_LINES:
+        return f"{at} reads with the wrong sign: its high and low lines look crossed."
+    if finding.kind is CauseKind.EQUALISED:
+        return f"{at} reads next to nothing at every flow: its equalising valve looks open."
+    if finding.kind is CauseKind.ROOT:
+        return f"{at} reads as if a square root were taken once too often, or once too little."
+    if finding.kind is CauseKind.PUMP_LIFT:
+        return f"The pump at {at} lifts {size:.3g} times what its curve says: look at speed, rotation, impeller and suction."
     if finding.kind is CauseKind.VAPOUR:
         return f"{at}: the column is parted by vapour there: the pressure would have to fall to the liquid's vapour pressure or below."
     if finding.kind is CauseKind.CLOSED_OFF:

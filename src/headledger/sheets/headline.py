@@ -181,7 +181,9 @@ def _with_rival(cause: CauseFound) -> str:
 
 
 def _what_next(result: CheckResult, leaders: Sequence[CauseFound]) -> tuple[str, ...]:
-    lines = [_next_of(cause) for cause in leaders]
+    lines = [f"{check.says} (about {check.minutes:.0f} min)" for check in result.next_checks[:2]]
+    looked_at = {check.place.gauge or check.place.run for check in result.next_checks[:2]}
+    lines += [_next_of(c) for c in leaders if (c.place.gauge or c.place.run) not in looked_at or c.accepted]
     if not leaders and outcome_of(result) is Outcome.TROUBLE:
         lines.append("Readings at another flow, or with the liquid at rest, to narrow it down.")
     unchecked = [gauge.tag for gauge in result.gauges if gauge.verdict is Verdict.UNCHECKED]

@@ -63,6 +63,7 @@ def _print_report(result: CheckResult, console: Console) -> None:
     _print_section(console, "Gauges", [_gauge_table(by_trouble(result.gauges))])
     _print_section(console, "Why", _why_lines(result.gauges))
     _print_section(console, "Findings", _finding_lines(result.causes))
+    _print_section(console, "Next checks", _check_lines(result))
     _print_section(console, "Not used from the logs", _reject_lines(result))
     _print_section(console, "Taken as given", _remark_lines(result.remarks))
     _print_section(console, "Caution", [_hanging("-", Text(line)) for line in CAUTIONS])
@@ -148,6 +149,14 @@ def _finding_lines(causes: Iterable[CauseFound]) -> Iterator[Table]:
         yield _hanging(Text(percent(cause.probability).rjust(6), style="bold"), body, label_width=6)
     if rest:
         yield _hanging("", Text(rest), label_width=6)
+
+
+def _check_lines(result: CheckResult) -> Iterator[Table | Text]:
+    for text in result.answers:
+        yield _hanging("-", Text(f"Taken into account: {text}"))
+    for check in result.next_checks:
+        body = Text(f"{check.says}\n{check.gain_bits:.2f} bit, about {check.minutes:.0f} min. {check.caution}")
+        yield _hanging("-", body)
 
 
 def _reject_lines(result: CheckResult) -> Iterator[Table | Text]:

@@ -14,6 +14,7 @@ from headledger.diagnosis.result import (
     CheckResult,
     GaugeFound,
     GaugeSpell,
+    NextCheck,
     Place,
     Rival,
     RunGrade,
@@ -46,9 +47,10 @@ def result_to_json(result: CheckResult) -> dict[str, Any]:
         "clean_probability": _number(result.clean_probability),
         "gauges": [_gauge(gauge) for gauge in result.gauges],
         "causes": [_cause(cause) for cause in result.causes],
-        "next_checks": [],
+        "next_checks": [_next_check(check) for check in result.next_checks],
         "rejects": [_reject(reject) for reject in result.rejects],
         "remarks": list(result.remarks),
+        "answers": list(result.answers),
     }
 
 
@@ -165,6 +167,18 @@ def _cause(cause: CauseFound) -> dict[str, Any]:
         "accepted": cause.accepted,
         "rivals": [_rival(rival) for rival in cause.rivals],
         "says": cause.says,
+    }
+
+
+def _next_check(check: NextCheck) -> dict[str, Any]:
+    return {
+        "action": check.action,
+        "at": _place(check.place),
+        "gain_bits": _number(check.gain_bits),
+        "minutes": _number(check.minutes),
+        "separates": [list(pair) for pair in check.separates],
+        "says": check.says,
+        "caution": check.caution,
     }
 
 

@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING, ClassVar, Protocol
 
@@ -35,12 +36,16 @@ class FolderCheck(Protocol):
 
 
 def check_late(
-    folder: Path, *, on_progress: Callable[[str, float], None], should_stop: Callable[[], bool]
+    folder: Path,
+    *,
+    on_progress: Callable[[str, float], None],
+    should_stop: Callable[[], bool],
+    answers: Sequence[str] = (),
 ) -> CheckResult:
     """The check itself, imported when it is needed: what it imports takes longer than to draw the first screen."""
     from headledger.diagnosis.check import check_folder
 
-    return check_folder(folder, on_progress=on_progress, should_stop=should_stop)
+    return check_folder(folder, answers=answers, on_progress=on_progress, should_stop=should_stop)
 
 
 class HeadledgerApp(App[None]):
@@ -52,6 +57,8 @@ class HeadledgerApp(App[None]):
         The job folder.
     check : callable, optional
         What judges it; tests hand in another.
+    answers : sequence of str
+        Results of actions on site that the judgement takes into account.
     """
 
     TITLE = "headledger"
@@ -65,11 +72,11 @@ class HeadledgerApp(App[None]):
         Binding("question_mark", "show_help_panel", "Help", id="help", key_display="?"),
     ]
 
-    def __init__(self, folder: Path, *, check: FolderCheck = check_late) -> None:
+    def __init__(self, folder: Path, *, check: FolderCheck | None = None, answers: Sequence[str] = ()) -> None:
         super().__init__()
         self.folder = folder
         self.ending = Ending.STOPPED
-        self._check_job = check
+        self._check_job: FolderCheck = check or partial(check_late, answers=tuple(answers))
         self._checking = False
         self.register_theme(DARK_THEME)
         self.register_theme(LIGHT_THEME)
