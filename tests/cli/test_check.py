@@ -28,7 +28,7 @@ def answer(monkeypatch: pytest.MonkeyPatch) -> Answer:
     def put(result: CheckResult) -> list[tuple[Path, object]]:
         calls: list[tuple[Path, object]] = []
 
-        def check_folder(folder: Path, *, on_progress: object = None, should_stop: object = None) -> CheckResult:
+        def check_folder(folder: Path, *, on_progress: object = None, **_more: object) -> CheckResult:
             calls.append((folder, on_progress))
             return result
 

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Collection, Sequence
 from dataclasses import dataclass, replace
+from itertools import combinations
 
 import numpy as np
 from numpy.typing import NDArray
@@ -32,6 +33,9 @@ REACH_NATS = 7.0
 
 KEPT_NATS = 12.0
 """Sets further below the best than this are not listed. [nat]"""
+
+SOLVING_ROUNDS = 4
+"""Rounds in which the explanations that lead are solved."""
 
 VARIANT_GAIN, MOST_VARIANTS = 2.0, 4
 """Least log evidence that a changed model must bring to be weighed with further causes, and as many are. [nat], [-]"""
@@ -395,26 +399,42 @@ def _at_own_solutions(
     model: Model, explanations: list[Explanation], prior: CountPrior, should_stop: Callable[[], bool] | None
 ) -> list[Explanation]:
     """The leading explanations linearised again, each at its own solution."""
-    ordered = sorted(explanations, key=lambda e: -e.log_weight)
-    base = ordered[0].frame
-    shares = mark_shares(base.marks, prior.other_kinds)
-    bends = loss_bends(base.linear)
-    out: list[Explanation] = []
-    for rank, e in enumerate(ordered):
-        near = e.log_weight > ordered[0].log_weight - OWN_NATS and rank < OWN_SOLUTIONS
+    base = explanations[0].frame
+    weights = {e.chosen: replace(e) for e in explanations}
+    wanted: set[tuple[int, ...]] = set()
+    if loss_bends(base.linear):
         # a loss that moves the flows is not judged by what a small one would do
-        near |= bends and len(e.chosen) == 1 and base.marks[e.chosen[0]].kind in LOSS_KINDS
-        if e.chosen and near and not (should_stop and should_stop()):
-            frame, chosen = own_frame(model, base, e.chosen)
-            weight = (
-                frame.log_evidence_of_none
-                - base.log_evidence_of_none
-                + frame.log_gain(chosen)
-                + set_log_prior(shares, prior, e.chosen)
-                + sign_log_weight(model, frame, chosen)
-            )
-            e = Explanation(chosen=chosen, frame=frame, log_weight=weight)
-        elif not e.chosen:
-            e = replace(e, log_weight=e.log_weight + sign_log_weight(model, e.frame, ()))
-        out.append(e)
-    return out
+        wanted |= {chosen for chosen in weights if len(chosen) == 1 and base.marks[chosen[0]].kind in LOSS_KINDS}
+    solved: set[tuple[int, ...]] = set()
+    # what leads may fall back once it is solved, and leave others in the lead that are not
+    for _ in range(SOLVING_ROUNDS):
+        ordered = sorted(weights, key=lambda chosen: -weights[chosen].log_weight)
+        top = weights[ordered[0]].log_weight
+        wanted |= {c for c in ordered[:OWN_SOLUTIONS] if weights[c].log_weight > top - OWN_NATS}
+        # what is part of a likely set is weighed as exactly as the set
+        wanted |= {part for c in wanted for size in range(len(c)) for part in combinations(c, size) if part in weights}
+        fresh = wanted - solved
+        if not fresh or (should_stop and should_stop()):
+            break
+        for chosen in fresh:
+            weights[chosen] = _at_own_solution(model, base, chosen, weights[chosen], prior)
+        solved |= fresh
+    return list(weights.values())
+
+
+def _at_own_solution(
+    model: Model, base: Frame, chosen: tuple[int, ...], before: Explanation, prior: CountPrior
+) -> Explanation:
+    """One explanation linearised at its own solution."""
+    if not chosen:
+        return replace(before, log_weight=before.log_weight + sign_log_weight(model, before.frame, ()))
+    frame, own = own_frame(model, base, chosen)
+    shares = mark_shares(base.marks, prior.other_kinds)
+    weight = (
+        frame.log_evidence_of_none
+        - base.log_evidence_of_none
+        + frame.log_gain(own)
+        + set_log_prior(shares, prior, chosen)
+        + sign_log_weight(model, frame, own)
+    )
+    return Explanation(chosen=own, frame=frame, log_weight=weight)

@@ -98,7 +98,7 @@ def action_sentence(kind: str, place: Place, separates: Sequence[tuple[str, str]
         "survey": "Survey the elevation of {at} anew",
         "vent": "Vent {at} and see whether gas comes",
         "open-strainer": "Open {at} and look",
-        "stroke-valve": "See how far the valve at {at} is open, and stroke it",
+        "stroke-valve": "See whether a valve in {at} is part closed, or something is lodged in it",
         "check-meter": "Compare the flow meter of {at} with a second measurement",
         "check-pump": "Look at the pump at {at}: rotation, speed, suction",
     }[kind]

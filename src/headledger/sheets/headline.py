@@ -13,6 +13,7 @@ from headledger.sheets.outcome import CLEAN_FLOOR, Outcome, outcome_of
 # A cause with its rivals leads where together they are more likely than not.
 _TOLD_FROM, _MOST_TOLD = 0.05, 8
 _LEADING_WEIGHT = 0.5
+_MOST_CHECKS_TOLD = 2
 # One side is named alone where it holds this share of a cause and its rivals.
 _ONE_SIDE = 0.9
 
@@ -63,6 +64,9 @@ def leading_causes(causes: Sequence[CauseFound]) -> tuple[CauseFound, ...]:
     for cause in causes:
         weight = cause.probability + sum(rival.probability for rival in cause.rivals)
         if (cause.kind, cause.place) in spoken_for or not (cause.accepted or weight >= _LEADING_WEIGHT):
+            continue
+        told = {(leader.kind, leader.place) for leader in leaders}
+        if not cause.accepted and any((rival.kind, rival.place) in told for rival in cause.rivals):
             continue
         leaders.append(cause)
         spoken_for.update((rival.kind, rival.place) for rival in cause.rivals)
@@ -181,9 +185,10 @@ def _with_rival(cause: CauseFound) -> str:
 
 
 def _what_next(result: CheckResult, leaders: Sequence[CauseFound]) -> tuple[str, ...]:
-    lines = [f"{check.says} (about {check.minutes:.0f} min)" for check in result.next_checks[:2]]
-    looked_at = {check.place.gauge or check.place.run for check in result.next_checks[:2]}
-    lines += [_next_of(c) for c in leaders if (c.place.gauge or c.place.run) not in looked_at or c.accepted]
+    lines = [_next_of(cause) for cause in leaders if cause.accepted]
+    lines += [f"{check.says} (about {check.minutes:.0f} min)" for check in result.next_checks[:_MOST_CHECKS_TOLD]]
+    if not result.next_checks:
+        lines += [_next_of(cause) for cause in leaders if not cause.accepted]
     if not leaders and outcome_of(result) is Outcome.TROUBLE:
         lines.append("Readings at another flow, or with the liquid at rest, to narrow it down.")
     unchecked = [gauge.tag for gauge in result.gauges if gauge.verdict is Verdict.UNCHECKED]
