@@ -172,7 +172,7 @@ def own_frame(model: Model, shared: Frame, chosen: Sequence[int]) -> tuple[Frame
     """
     frame, index = shared, tuple(chosen)
     wanted = [(shared.marks[i].key, shared.marks[i].form) for i in chosen]
-    scaled = _with_noise(model, [shared.marks[i] for i in chosen])
+    scaled = with_noise(model, [shared.marks[i] for i in chosen])
     # all is near linear but what bends the hydraulics, and that is met by further rounds
     kinds = {shared.marks[i].kind for i in chosen}
     bends = bool(kinds & {CauseKind.DENSITY_ERROR, CauseKind.FLOW_METER_ERROR})
@@ -185,7 +185,7 @@ def own_frame(model: Model, shared: Frame, chosen: Sequence[int]) -> tuple[Frame
     return frame, index
 
 
-def _with_noise(model: Model, marks: Sequence[Mark]) -> Model:
+def with_noise(model: Model, marks: Sequence[Mark]) -> Model:
     """The model with the noise of stretched gauges taken back to what it was before it was stretched."""
     factors = {gauge: mark.noise_factor for mark in marks if mark.noise_factor != 1.0 for gauge in mark.own}
     if not factors:

@@ -14,9 +14,9 @@ from itertools import combinations
 import numpy as np
 from numpy.typing import NDArray
 
-from headledger.diagnosis.causes.base import View
+from headledger.diagnosis.causes.base import Mark, View
 from headledger.diagnosis.estimate import Model
-from headledger.diagnosis.frame import LOSS_KINDS, Frame, all_marks, loss_bends, make_frame, own_frame
+from headledger.diagnosis.frame import LOSS_KINDS, Frame, all_marks, loss_bends, make_frame, own_frame, with_noise
 from headledger.diagnosis.one_sided import sign_log_weight
 from headledger.diagnosis.priors import CountPrior, mark_shares
 from headledger.diagnosis.result import CauseKind, Place
@@ -154,18 +154,24 @@ def search(
     if not stay:
         best = max(weighed, key=lambda chosen: weighed[chosen])
         frame = shared_frame(model, _solution(model, frame, best), kinds)
+    full = frame
+    if whole:
+        # a cause that stretches a reading stretches its noise: with others beside it, it is weighed on a model of its own
+        frame = full.only([index for index, mark in enumerate(full.marks) if mark.noise_factor == 1.0])
+    if not stay:
         weighed = _weigh(frame, prior, should_stop)
     explanations = [Explanation(chosen=chosen, frame=frame, log_weight=w) for chosen, w in weighed.items()]
     if not stay:
         explanations = _at_own_solutions(model, explanations, prior, should_stop)
     if whole and not (should_stop and should_stop()):
-        explanations += _with_variants(model, frame, weighed, prior, should_stop)
+        explanations += _with_variants(model, frame, full, weighed, prior, should_stop)
     return Posterior(explanations=_normalised(explanations), frame=frame, other_kinds=prior.other_kinds)
 
 
 def _with_variants(
     model: Model,
     base: Frame,
+    full: Frame,
     weighed: dict[tuple[int, ...], float],
     prior: CountPrior,
     should_stop: Callable[[], bool] | None,
@@ -182,17 +188,36 @@ def _with_variants(
                 spoilt[key] = variant
     likely = sorted((v for v in spoilt.values() if v.gain > VARIANT_GAIN), key=lambda v: -v.gain)[:MOST_VARIANTS]
     likely += _worth_weighing(model, base, [*closed_variants(model), *vapour_variants(base.linear)])
+    likely += _stretched(model, full)
     found: list[Explanation] = []
     for variant in likely:
         if should_stop and should_stop():
             break
-        found += _weigh_variant(variant, base, prior, _place_count(model, variant.mark.kind), should_stop)
+        places = _place_count(model, full, variant.mark.kind)
+        found += _weigh_variant(variant, base, full, prior, places, should_stop)
     return found
 
 
-def _place_count(model: Model, kind: CauseKind) -> int:
+def _stretched(model: Model, full: Frame) -> list[Variant]:
+    """Gauges that may be logged in another unit or scaled to another range, each with the noise that it then really had."""
+    index = [i for i, mark in enumerate(full.marks) if mark.noise_factor != 1.0]
+    if not index:
+        return []
+    gains = full.log_gains(np.array([[i] for i in index], dtype=np.int64))
+    order = np.argsort(-gains)[: 2 * MOST_VARIANTS]
+    return [
+        Variant(mark=full.marks[index[k]], model=with_noise(model, [full.marks[index[k]]]), gain=float(gains[k]))
+        for k in order
+        if gains[k] > VARIANT_GAIN
+    ]
+
+
+def _place_count(model: Model, full: Frame, kind: CauseKind) -> int:
     """At how many places a kind of changed model may sit."""
     job = model.layout.job
+    marked = len({mark.place for mark in full.marks if mark.kind is kind})
+    if marked:
+        return marked
     counts = {CauseKind.CLOSED_OFF: len(job.runs), CauseKind.VAPOUR: len(job.stations)}
     return counts.get(kind, len(job.gauges))
 
@@ -210,24 +235,33 @@ def _worth_weighing(model: Model, base: Frame, variants: Sequence[Variant]) -> l
 
 
 def _weigh_variant(
-    variant: Variant, base: Frame, prior: CountPrior, places: int, should_stop: Callable[[], bool] | None
+    variant: Variant,
+    base: Frame,
+    full: Frame,
+    prior: CountPrior,
+    places: int,
+    should_stop: Callable[[], bool] | None,
 ) -> list[Explanation]:
     """One changed model, alone and with up to two causes more."""
-    model = variant.model
-    start = base.linear if variant.mark.spoils else model.linearise(first_points(model.layout, model.spells))
-    linear = model.linearise([state.point for state in start.states], applied=start.applied)
-    linear = model.linearise(model.moved(linear, np.zeros(linear.row_count)))
-    frame = _pruned(make_frame(linear, all_marks(View(model, linear))))
-    if variant.mark.spoils:
-        frame = frame.only([i for i, mark in enumerate(frame.marks) if variant.mark.own[0] not in mark.own])
+    model, stretches = variant.model, variant.mark.noise_factor != 1.0
+    if variant.mark.spoils or stretches:
+        linear = model.linearise([state.point for state in base.linear.states])
+    else:
+        linear = model.linearise(first_points(model.layout, model.spells))
+    effect = variant.mark.vector if stretches else np.zeros(linear.row_count)
+    linear = model.linearise(model.moved(linear, effect))
+    marks = all_marks(View(model, linear))
+    mark = replace(variant.mark, vector=np.zeros(linear.row_count))
+    if stretches:
+        mark = next((m for m in marks if m.key == mark.key and m.form == mark.form), variant.mark)
+    frame = _pruned(make_frame(linear, [m for m in marks if _goes_with(m, mark)], -mark.vector))
     further = CountPrior(
         of=tuple((count + 1) * share for count, share in enumerate(prior.of[1:])), other_kinds=prior.other_kinds
     )
     weighed = _weigh(frame, further, should_stop)
     number = len(frame.marks)
-    mark = replace(variant.mark, vector=np.zeros(linear.row_count))
     with_mark = make_frame(linear, [*frame.marks, mark])
-    kinds = len({mark.kind for mark in base.marks}) + prior.other_kinds
+    kinds = len({one.kind for one in full.marks}) + prior.other_kinds
     own = float(np.log(mark.share / kinds / places)) + mark.log_jacobian
     scale = frame.log_evidence_of_none - base.log_evidence_of_none
     top = max(weighed.values())
@@ -236,6 +270,15 @@ def _weigh_variant(
         for chosen, weight in weighed.items()
         if weight > top - KEPT_NATS
     ]
+
+
+def _goes_with(mark: Mark, special: Mark) -> bool:
+    """Whether a further cause may stand beside the one that changed the model."""
+    if mark.noise_factor != 1.0:
+        return False
+    if special.spoils:
+        return special.own[0] not in mark.own
+    return not (mark.kind is CauseKind.SPAN_ERROR and special.noise_factor != 1.0 and mark.own == special.own)
 
 
 def shared_frame(model: Model, points: Sequence[Point], kinds: Collection[CauseKind] | None = None) -> Frame:
