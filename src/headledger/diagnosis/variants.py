@@ -133,8 +133,7 @@ def stuck_log_density(gauge: Gauge, readings_pa: Array, noise_pa: Array) -> floa
 def zero_log_density(gauge: Gauge, readings_pa: Array, noise_pa: Array) -> float:
     """Log density of readings about zero, as far as the gauge's own zero may be off: both sides see one pressure."""
     limit = gauge.accuracy.at(0.0, gauge.range_low_pa, gauge.range_high_pa)
-    deviation = np.hypot(noise_pa, limit / np.sqrt(3.0))
-    return float((-0.5 * (readings_pa / deviation) ** 2 - np.log(deviation) - 0.5 * np.log(2.0 * np.pi)).sum())
+    return _shared_log_density(readings_pa, np.maximum(noise_pa, 1.0), limit / np.sqrt(3.0))
 
 
 def _at_limit(gauge: Gauge, readings_pa: Array) -> NDArray[np.bool_]:
@@ -144,11 +143,19 @@ def _at_limit(gauge: Gauge, readings_pa: Array) -> NDArray[np.bool_]:
 
 
 def limit_log_density(gauge: Gauge, readings_pa: Array, noise_pa: Array) -> float:
-    """Log density of readings at the end of the range, each about that end."""
+    """Log density of readings at an end of the range, give or take where exactly the output stops."""
     high = readings_pa > (gauge.range_low_pa + gauge.range_high_pa) / 2.0
     away = readings_pa - np.where(high, gauge.range_high_pa, gauge.range_low_pa)
-    deviation = np.hypot(noise_pa, LIMIT_SHARE * gauge.span_pa)
-    return float((-0.5 * (away / deviation) ** 2 - np.log(deviation) - 0.5 * np.log(2.0 * np.pi)).sum())
+    return _shared_log_density(away, np.maximum(noise_pa, 1.0), LIMIT_SHARE * gauge.span_pa)
+
+
+def _shared_log_density(away_pa: Array, noise_pa: Array, shared_sd_pa: float) -> float:
+    """Log density of values that share one offset, normal about nothing, besides their own noise."""
+    weight = noise_pa**-2.0
+    whole = float(weight.sum()) + shared_sd_pa**-2.0
+    square = float(weight @ away_pa**2) - float(weight @ away_pa) ** 2 / whole
+    logarithms = away_pa.size * np.log(2.0 * np.pi) + 2.0 * np.log(noise_pa).sum() + np.log(shared_sd_pa**2 * whole)
+    return -0.5 * (square + float(logarithms))
 
 
 def _spoilt(

@@ -14,8 +14,8 @@ from headledger.statistics.sizes import SizePrior
 
 Array = NDArray[np.float64]
 
-LEAST_FRACTION = 1e-3
-"""Floor of a fraction of span in a Jacobian, so that a reading of nothing does not decide. [-]"""
+CUT_OFF_FRACTION = 0.05
+"""Below this fraction of span a rooted signal is cut off to nothing (common practice, no source): there a root changes no density. [-]"""
 
 
 def crossed_lines(view: View) -> list[Mark]:
@@ -31,11 +31,11 @@ def roots(view: View) -> list[Mark]:
     found = []
     for index, gauge, readings in _differential(view):
         share = np.clip((readings - gauge.range_low_pa) / gauge.span_pa, 0.0, None)
-        floor = np.maximum(share, LEAST_FRACTION)
+        seen = np.where(share > CUT_OFF_FRACTION, share, np.nan)
         # a root too many is undone by the square, a root too few by the root
         for undone, log_slope in (
-            (share**2, float(np.log(2.0 * floor).sum())),
-            (np.sqrt(share), float(-np.log(2.0 * np.sqrt(floor)).sum())),
+            (share**2, float(np.nansum(np.log(2.0 * seen)))),
+            (np.sqrt(share), float(-np.nansum(np.log(2.0 * np.sqrt(seen))))),
         ):
             right = gauge.range_low_pa + gauge.span_pa * undone
             found.append(_undone(view, index, gauge, CauseKind.ROOT, readings, right, log_slope, 0.5))
