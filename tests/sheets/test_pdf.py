@@ -11,6 +11,7 @@ from pathlib import Path
 import pytest
 
 from headledger.diagnosis.result import CheckResult, Verdict
+from headledger.sheets.columns import flow_words
 from headledger.sheets.content import HEADING, NOT_A_CERTIFICATE, fingerprint
 from headledger.sheets.pdf import MARGIN, Paper, sheets_to_pdf
 from tests.made_results import found_gauge
@@ -54,7 +55,9 @@ def test_every_gauge_of_every_sample_has_one_page_after_the_summary(
 @needs("pdftotext")
 def test_page_of_a_gauge_holds_what_is_signed_for(tmp_path: Path):
     """Fire main, PIT-903 logged in bar as psi: identity, numbers by spell, error, rule, cause."""
-    pages = pages_of(sheets_to_pdf(sample_result("fire-main-units"), gauges=["PIT-903"]), tmp_path, "-raw")
+    result = sample_result("fire-main-units")
+    flow = next(flow for flow in result.spells[1].flows if flow.run == "FM-2")
+    pages = pages_of(sheets_to_pdf(result, gauges=["PIT-903"]), tmp_path, "-raw")
     assert len(pages) == 2
     page = re.sub(r"\s+", " ", pages[1])
     for words in (
@@ -69,7 +72,7 @@ def test_page_of_a_gauge_holds_what_is_signed_for(tmp_path: Path):
         "U / tolerance",
         "Likely outside",
         "Span seen",
-        "2 flowing 2026-05-18 07:38 – 07:43 453.3 ± 6.2 gpm",
+        f"2 flowing 2026-05-18 07:38 – 07:43 {flow_words(flow, result.job.display.flow)}",
         "PIT-903 looks logged in bar where psig is stated",
         "As left, by hand",
         "PIT-903: reading and expected over 21 minutes",

@@ -15,6 +15,7 @@ from headledger.diagnosis.grade import StationHeads, station_heads
 from headledger.diagnosis.layout import liquid_at
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.diagnosis.search import Posterior
+from headledger.diagnosis.variants import VAPOUR_MARGIN_PA, said_pressure_pa
 from headledger.diagnosis.wording import vapour_statement
 from headledger.statistics.sizes import SizePrior
 
@@ -127,7 +128,12 @@ def vapour_places(model: Model, frame: Frame, chosen: tuple[int, ...]) -> tuple[
         if not np.isfinite(vapour_pa):
             continue
         heads = station_heads(model, frame, chosen, index)
+        said = said_pressure_pa(frame.linear, index)
         for found in _in_spell(model, frame, index, heads, vapour_pa):
+            at = model.layout.station_index.get(found.place.station)
+            # where a gauge itself reads below vapour pressure there is no vapour: it would read that pressure, and no less
+            if at is not None and said[at] < vapour_pa - VAPOUR_MARGIN_PA:
+                continue
             if found.place not in worst or worst[found.place].probability < found.probability:
                 worst[found.place] = found
     ordered = sorted(worst.values(), key=lambda found: (-found.probability, found.pressure_pa))

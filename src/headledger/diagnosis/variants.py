@@ -155,7 +155,7 @@ def _shared_log_density(away_pa: Array, noise_pa: Array, shared_sd_pa: float) ->
     whole = float(weight.sum()) + shared_sd_pa**-2.0
     square = float(weight @ away_pa**2) - float(weight @ away_pa) ** 2 / whole
     logarithms = away_pa.size * np.log(2.0 * np.pi) + 2.0 * np.log(noise_pa).sum() + np.log(shared_sd_pa**2 * whole)
-    return -0.5 * (square + float(logarithms))
+    return float(-0.5 * (square + logarithms))
 
 
 def _spoilt(
@@ -247,7 +247,7 @@ def vapour_variants(linear: Linear) -> list[Variant]:
         state = linear.states[index]
         vapour_pa = float(liquid_at(layout.job.liquid, spell.temperature_k).vapour_pressure_pa)
         computed = layout.barometer_pa + state.head_weight_pa_m * (state.head_m - height)
-        said = _said_pa(linear, index)
+        said = said_pressure_pa(linear, index)
         parted = np.minimum(computed, said) < vapour_pa + VAPOUR_MARGIN_PA
         if not np.isfinite(vapour_pa) or not parted.any() or parted.all():
             changed.append(spell)
@@ -276,7 +276,7 @@ def vapour_variants(linear: Linear) -> list[Variant]:
     return [Variant(mark=mark, model=Model(layout, changed), gain=float("nan"))]
 
 
-def _said_pa(linear: Linear, index: int) -> Array:
+def said_pressure_pa(linear: Linear, index: int) -> Array:
     """Lowest absolute pressure at each station that a gauge there says, infinite where none does. [Pa]"""
     layout, spell, state = linear.model.layout, linear.model.spells[index], linear.states[index]
     said = np.full(len(layout.job.stations), np.inf)
