@@ -15,7 +15,7 @@ from rich.text import Text
 from textual.widgets import Static
 
 from headledger.diagnosis.result import CheckResult, Verdict
-from headledger.sheets.headline import headline, told_causes
+from headledger.sheets.headline import check_worth, headline, told_causes
 from headledger.sheets.marks import CAUTIONS, verdict_label
 from headledger.sheets.pdf import sheets_to_pdf
 from headledger.sheets.spreadsheet import result_to_csv
@@ -38,6 +38,8 @@ def said_of_the_job(result: CheckResult) -> list[str]:
     return [
         *(line for answer in headline(result) for line in answer.lines),
         *(cause.says for cause in told),
+        *(check.says for check in result.next_checks),
+        *(check_worth(check) for check in result.next_checks),
         *CAUTIONS,
     ]
 

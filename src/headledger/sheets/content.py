@@ -10,7 +10,7 @@ from headledger import __version__
 from headledger.diagnosis.result import CauseFound, CheckResult, GaugeFound, GaugeSpell, SpellFound
 from headledger.sheets.columns import error_columns, flow_words, flows_line, spell_columns
 from headledger.sheets.gauge_facts import Fact, conditions, identity
-from headledger.sheets.headline import cause_label, told_causes
+from headledger.sheets.headline import cause_label, check_worth, told_causes
 from headledger.sheets.marks import by_trouble, verdict_label
 from headledger.sheets.numbers import clock_range, percent
 
@@ -128,6 +128,11 @@ def spell_rows(result: CheckResult) -> Rows:
 def findings(result: CheckResult) -> tuple[tuple[str, str], ...]:
     """Every finding worth telling: probability and label, and its sentence."""
     return _told(result.causes)
+
+
+def next_checks(result: CheckResult) -> tuple[tuple[str, str], ...]:
+    """What to do on site next: what it tells apart, and what it takes."""
+    return tuple((check.says, check_worth(check)) for check in result.next_checks)
 
 
 def input_lines(result: CheckResult) -> tuple[str, ...]:

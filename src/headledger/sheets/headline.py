@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
-from headledger.diagnosis.result import CauseFound, CauseKind, CheckResult, Place, Rival, Verdict
+from headledger.diagnosis.result import CauseFound, CauseKind, CheckResult, NextCheck, Place, Rival, Verdict
 from headledger.diagnosis.wording import COMPARABLE, kind_words
 from headledger.sheets.numbers import percent
 from headledger.sheets.outcome import CLEAN_FLOOR, Outcome, outcome_of
@@ -98,6 +98,11 @@ def told_causes(causes: Iterable[CauseFound]) -> tuple[tuple[CauseFound, ...], s
     if not left:
         return told, ""
     return told, f"{len(left)} more, none above {percent(max(left))}; the result file (--json) lists them."
+
+
+def check_worth(check: NextCheck) -> str:
+    """What a check on site settles, how long it takes, and its caution."""
+    return f"{check.gain_bits:.2f} bit, about {check.minutes:.0f} min. {check.caution}"
 
 
 def _anything_wrong(result: CheckResult) -> str:

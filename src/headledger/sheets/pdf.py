@@ -294,6 +294,11 @@ def _summary(result: CheckResult, room: _Room) -> list[Flowable]:
         _table(content.GAUGES_HEAD, content.gauge_rows(result), [s * width for s in shares], right=(3, 4, 5, 7))
     )
     story += [_words("Findings", _SECTION), *_finding_lines(content.findings(result))]
+    checks = content.next_checks(result)
+    if checks or result.answers:
+        story.append(_words("Next checks", _SECTION))
+        story += [_words(f"Taken into account: {text}") for text in result.answers]
+        story += [_words(f"{says} {worth}", _FINE) for says, worth in checks]
     story.append(_words(f"Spells (times in {result.job.timezone})", _SECTION))
     spell_shares = (0.07, 0.1, 0.25, 0.08, 0.5)
     story.append(_table(content.SPELLS_HEAD, content.spell_rows(result), [s * width for s in spell_shares], right=(3,)))
@@ -305,8 +310,9 @@ def _summary(result: CheckResult, room: _Room) -> list[Flowable]:
             else []
         )
         story += [_words(line, _FINE) for line in result.remarks]
-    story.append(KeepTogether([_words("Conditions", _SECTION), _facts(conditions(result.job), width)]))
-    story.append(KeepTogether([_words("Caution", _SECTION), _cautions(), *_signatures(width), *_inputs(result)]))
+    under_what = [_words("Conditions", _SECTION), _facts(conditions(result.job), width)]
+    signed = [_words("Caution", _SECTION), _cautions(), *_signatures(width), *_inputs(result)]
+    story.append(KeepTogether([*under_what, *signed]))
     return story
 
 

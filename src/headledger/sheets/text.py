@@ -15,7 +15,7 @@ from rich.text import Text
 
 from headledger.diagnosis.result import CauseFound, CheckResult, GaugeFound, Verdict
 from headledger.sheets.columns import error_columns, flows_line
-from headledger.sheets.headline import cause_label, headline, told_causes
+from headledger.sheets.headline import cause_label, check_worth, headline, told_causes
 from headledger.sheets.marks import CAUTIONS, by_trouble, verdict_label
 from headledger.sheets.numbers import clock_range, percent
 
@@ -155,8 +155,7 @@ def _check_lines(result: CheckResult) -> Iterator[Table | Text]:
     for text in result.answers:
         yield _hanging("-", Text(f"Taken into account: {text}"))
     for check in result.next_checks:
-        body = Text(f"{check.says}\n{check.gain_bits:.2f} bit, about {check.minutes:.0f} min. {check.caution}")
-        yield _hanging("-", body)
+        yield _hanging("-", Text(f"{check.says}\n{check_worth(check)}"))
 
 
 def _reject_lines(result: CheckResult) -> Iterator[Table | Text]:

@@ -23,6 +23,7 @@ from headledger.tui.widgets.answers import Answers
 from headledger.tui.widgets.findings_list import FindingsList
 from headledger.tui.widgets.gauge_detail import GaugeDetail
 from headledger.tui.widgets.gauge_table import GaugeTable
+from headledger.tui.widgets.next_checks_list import NextChecksList
 from headledger.tui.widgets.picture_view import PictureView
 from headledger.tui.widgets.title_line import TitleLine
 
@@ -53,7 +54,7 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
 - **enter** opens the page of the chosen gauge
 - **w** draws another way through the piping
 - **a** shows the answers in full, or a line each
-- **f** shows the findings with what the data cannot tell them from, and leads back; **g** leads to the gauges
+- **f** shows the findings, what the data cannot tell them from, and the next checks, and leads back; **g** leads to the gauges
 - **r** checks the job again, with what is in its folder now
 """
     COMMANDS: ClassVar = Screen.COMMANDS | {GaugeSearch}
@@ -91,6 +92,7 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
             with VerticalScroll(id="aside"):
                 yield GaugeDetail(result.spells)
                 yield FindingsList(result.causes)
+                yield NextChecksList(result)
                 yield Static("\n".join(CAUTIONS[1:]), id="cautions", markup=False)
         yield Static(CAUTIONS[0], id="caution", markup=False)
         yield Footer()
