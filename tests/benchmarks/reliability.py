@@ -12,13 +12,13 @@ from __future__ import annotations
 import sys
 import tempfile
 from concurrent.futures import ProcessPoolExecutor
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from itertools import pairwise
 from pathlib import Path
 from random import Random
 
 from headledger.diagnosis.check import check_folder
-from headledger.diagnosis.result import CauseKind, CheckResult
+from headledger.diagnosis.result import CauseFound, CauseKind, CheckResult, Verdict
 from tests.benchmarks.judgement_rates import is_alarm, sound, wilson
 from tests.make_samples import PRESSURE, SAMPLES, Sample, write
 
@@ -81,13 +81,45 @@ def _named(kind: CauseKind, place: str) -> Named:
     return ("level" if kind in TWINS else kind.value, place)
 
 
-def one(seed: int) -> tuple[Truth, bool, list[Entry]]:
+@dataclass(frozen=True, kw_only=True)
+class Judged:
+    """What was said of one drawn job, against its truth."""
+
+    truth: Truth
+    alarm: bool
+    first_right: bool
+    good: tuple[Verdict, ...]  # verdicts of gauges without trouble
+    bad: tuple[Verdict, ...]  # verdicts of gauges whose trouble exceeds their tolerance
+    entries: list[Entry]
+
+
+def one(seed: int) -> Judged:
     """One drawn job, judged."""
     sample, truth = drawn(SAMPLES[seed % len(SAMPLES)](), seed)
     with tempfile.TemporaryDirectory() as name:
         write(sample, Path(name))
         result = check_folder(Path(name) / sample.name)
-    return truth, is_alarm(result), entries(result, truth)
+    first = result.causes[0] if result.causes else None
+    return Judged(
+        truth=truth,
+        alarm=is_alarm(result),
+        first_right=truth is not None and first is not None and _same(first, truth),
+        good=tuple(g.verdict for g in result.gauges if g.tag not in sample.shift),
+        bad=tuple(
+            g.verdict for g in result.gauges if abs(sample.shift.get(g.tag, 0.0)) > 1.1 * tolerance(sample, g.tag)
+        ),
+        entries=entries(result, truth),
+    )
+
+
+def tolerance(sample: Sample, tag: str) -> float:
+    """A gauge's tolerance in its unit; the samples state it as a share of span."""
+    dial = next(dial for dial in sample.dials if dial.tag == tag)
+    return float(dial.tolerance.split()[0]) / 100.0 * dial.high
+
+
+def _same(cause: CauseFound, truth: tuple[CauseKind, str]) -> bool:
+    return _named(cause.kind, cause.place.gauge or cause.place.run) == _named(*truth)
 
 
 def calibration_error(found: list[Entry]) -> float:
@@ -107,10 +139,19 @@ def main(seeds: int = 200, workers: int = 1) -> None:
     """Print the reliability table."""
     with ProcessPoolExecutor(workers) as pool:
         jobs = list(pool.map(one, range(seeds), chunksize=4))
-    found = [entry for _, _, told in jobs for entry in told]
-    quiet = [alarm for truth, alarm, _ in jobs if truth is None]
+    found = [entry for job in jobs for entry in job.entries]
+    quiet = [job.alarm for job in jobs if job.truth is None]
+    troubled = [job for job in jobs if job.truth is not None]
+    raised = [job for job in troubled if job.alarm]
+    good = [verdict for job in jobs for verdict in job.good]
+    bad = [verdict for job in jobs for verdict in job.bad]
     print(f"{seeds} jobs, {len(found)} probabilities stated")
-    print(f"false alarms on sound systems: {wilson(sum(quiet), len(quiet))}")
+    print(f"false alarms on sound systems:       {wilson(sum(quiet), len(quiet))}")
+    print(f"troubles raised, faint ones and all: {wilson(len(raised), len(troubled))}")
+    print(f"first cause right where raised:      {wilson(sum(job.first_right for job in raised), len(raised))}")
+    print(f"good gauges failed:                  {wilson(good.count(Verdict.FAIL), len(good))}")
+    print(f"good gauges unresolved:              {wilson(good.count(Verdict.UNRESOLVED), len(good))}")
+    print(f"gauges over 1.1 tolerances passed:   {wilson(bad.count(Verdict.PASS), len(bad))}")
     print("stated            mean stated   true")
     for low, high in pairwise(EDGES):
         inside = _between(found, low, high)
