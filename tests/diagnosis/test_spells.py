@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 from numpy.typing import NDArray
 
-from headledger.diagnosis.averages import spell_means
+from headledger.diagnosis.averages import spell_pieces
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.readings import Timeline
 from headledger.diagnosis.spells import find_spells, unread_spells
@@ -96,7 +96,7 @@ def test_spell_means_of_white_noise_have_its_standard_error() -> None:
     ratios = []
     for seed in range(12):
         line = stepped([0.0, 0.006, 0.010, 0.004], seed=seed)
-        for spell in spell_means(layout, line, find_spells(layout, line)):
+        for spell in spell_pieces(layout, line, find_spells(layout, line), most=1):
             ratios += list(spell.noise_pa / (100.0 / np.sqrt(spell.samples)))
     assert 0.8 < float(np.median(ratios)) < 1.4
 
@@ -107,7 +107,7 @@ def test_spell_means_common_wander_is_no_noise() -> None:
     line = stepped([0.0, 0.006])
     wander = 3e3 * np.sin(np.linspace(0.0, 25.0, line.reading_pa.shape[0]))
     shared = replace(line, reading_pa=line.reading_pa + wander[:, None])
-    for spell in spell_means(layout, shared, find_spells(layout, shared)):
+    for spell in spell_pieces(layout, shared, find_spells(layout, shared), most=1):
         assert float(np.max(spell.noise_pa)) < 60.0
 
 
@@ -119,8 +119,8 @@ def test_spell_means_gap_while_heads_wander_does_not_move_the_mean() -> None:
     readings = line.reading_pa + swing[:, None]
     readings[:200, 2] = np.nan
     spells = find_spells(layout, replace(line, reading_pa=readings))
-    full = spell_means(layout, replace(line, reading_pa=line.reading_pa + swing[:, None]), spells)
-    gapped = spell_means(layout, replace(line, reading_pa=readings), spells)
+    full = spell_pieces(layout, replace(line, reading_pa=line.reading_pa + swing[:, None]), spells, most=1)
+    gapped = spell_pieces(layout, replace(line, reading_pa=readings), spells, most=1)
     for whole, part in zip(full, gapped, strict=True):
         if np.isfinite(part.reading_pa[2]):
             assert part.reading_pa[2] - part.reading_pa[1] == pytest.approx(

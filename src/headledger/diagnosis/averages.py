@@ -37,30 +37,9 @@ DEFAULT_SAMPLE_NOISE_TOLERANCES = 0.05
 """Noise of a mean that rests on too few rows to show its own, in tolerances. [-]"""
 
 
-def spell_means(layout: Layout, timeline: Timeline, spells: tuple[Spell, ...]) -> tuple[SpellMeans, ...]:
-    """What each spell says.
-
-    Parameters
-    ----------
-    layout : Layout
-    timeline : Timeline
-    spells : tuple of Spell
-
-    Returns
-    -------
-    tuple of SpellMeans
-        Of the spells in which some gauge gave a reading.
-    """
-    summaries = [_summary(layout, timeline, spell) for spell in spells]
-    noise = _pooled_noise(layout, spells, summaries)
-    found: list[SpellMeans] = []
-    for spell, summary, noise_pa in zip(spells, summaries, noise, strict=True):
-        if np.isfinite(summary.mean_pa).any():
-            found.append(_means(layout, timeline, spell, summary, noise_pa, len(found) + 1))
-    return tuple(found)
-
-
-def spell_pieces(layout: Layout, timeline: Timeline, spells: tuple[Spell, ...]) -> tuple[SpellMeans, ...]:
+def spell_pieces(
+    layout: Layout, timeline: Timeline, spells: tuple[Spell, ...], *, most: int = PIECES
+) -> tuple[SpellMeans, ...]:
     """What each spell says, cut into pieces of time, so that what changes within a spell can be seen.
 
     Parameters
@@ -68,11 +47,13 @@ def spell_pieces(layout: Layout, timeline: Timeline, spells: tuple[Spell, ...]) 
     layout : Layout
     timeline : Timeline
     spells : tuple of Spell
+    most : int
+        Pieces that all spells together are cut into; with 1, every spell stays whole.
 
     Returns
     -------
     tuple of SpellMeans
-        As `spell_means`, each spell in as many rows as it has pieces, all with its `id`.
+        Of the spells in which some gauge gave a reading, each in as many rows as it has pieces, all with its `id`.
 
     Notes
     -----
@@ -83,7 +64,7 @@ def spell_pieces(layout: Layout, timeline: Timeline, spells: tuple[Spell, ...]) 
     noise = _pooled_noise(layout, spells, summaries)
     kept = [k for k, summary in enumerate(summaries) if np.isfinite(summary.mean_pa).any()]
     lengths = [spells[k].last - spells[k].first for k in kept]
-    counts = _piece_counts(lengths, gauges=layout.gauge_count)
+    counts = _piece_counts(lengths, gauges=layout.gauge_count, most=most)
     found: list[SpellMeans] = []
     for number, (k, count) in enumerate(zip(kept, counts, strict=True), start=1):
         if count == 1:
@@ -101,9 +82,9 @@ def spell_pieces(layout: Layout, timeline: Timeline, spells: tuple[Spell, ...]) 
     return tuple(found)
 
 
-def _piece_counts(lengths: Sequence[int], *, gauges: int) -> list[int]:
+def _piece_counts(lengths: Sequence[int], *, gauges: int, most: int) -> list[int]:
     """Into how many pieces each spell is cut: all together about a dozen, fewer where many gauges make many rows."""
-    wanted = int(np.clip(MOST_ROWS // max(gauges, 1), len(lengths), PIECES)) if lengths else 0
+    wanted = int(np.clip(MOST_ROWS // max(gauges, 1), len(lengths), most)) if lengths else 0
     piece = max(sum(lengths) / max(wanted, 1), LEAST_PIECE_BLOCKS)
     return [max(1, round(length / piece)) for length in lengths]
 

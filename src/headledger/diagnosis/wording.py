@@ -182,23 +182,25 @@ def _statement(model: Model, finding: Finding) -> str:
     if finding.kind is CauseKind.FROZEN:
         since = "" if finding.mark.start_s is None else f" from about {clock(model, finding.mark.start_s)} on"
         return f"{at} does not follow what happens around it{since}: stuck, or its own valve is shut."
-    if finding.kind is CauseKind.AT_LIMIT:
-        return f"{at} stands at the end of its range: what it should read lies beyond, and it says no more than that."
-    if finding.kind is CauseKind.CROSSED_LINES:
-        return f"{at} reads with the wrong sign: its high and low lines look crossed."
-    if finding.kind is CauseKind.EQUALISED:
-        return f"{at} reads next to nothing at every flow: its equalising valve looks open."
-    if finding.kind is CauseKind.ROOT:
-        return f"{at} reads as if a square root were taken once too often, or once too little."
     if finding.kind is CauseKind.PUMP_LIFT:
         return f"The pump at {at} lifts {size:.3g} times what its curve says: look at speed, rotation, impeller and suction."
-    if finding.kind is CauseKind.VAPOUR:
-        return f"{at}: the column is parted by vapour there: the pressure would have to fall to the liquid's vapour pressure or below."
-    if finding.kind is CauseKind.CLOSED_OFF:
-        return f"{at} looks shut: what lies behind it keeps its own head and does not follow the rest."
-    if finding.kind is CauseKind.SWAPPED:
-        return f"{at} look exchanged: each logs what the other should read."
+    if finding.kind in SIZELESS:
+        return SIZELESS[finding.kind].format(at=at)
     return _pipe_statement(model, finding, at, size)
+
+
+SIZELESS: dict[CauseKind, str] = {
+    CauseKind.AT_LIMIT: "{at} stands at the end of its range: what it should read lies beyond, and it says no more than that.",
+    CauseKind.CROSSED_LINES: "{at} reads with the wrong sign: its high and low lines look crossed.",
+    CauseKind.EQUALISED: "{at} reads next to nothing at every flow: its equalising valve looks open.",
+    CauseKind.ROOT: "{at} reads as if a square root were taken once too often, or once too little.",
+    CauseKind.VAPOUR: (
+        "{at}: the column is parted by vapour there: the pressure would have to fall to the liquid's vapour pressure or below."
+    ),
+    CauseKind.CLOSED_OFF: "{at} looks shut: what lies behind it keeps its own head and does not follow the rest.",
+    CauseKind.SWAPPED: "{at} look exchanged: each logs what the other should read.",
+}
+"""What is said of causes whose size says nothing more, at a place."""
 
 
 def _pipe_statement(model: Model, finding: Finding, at: str, size: float) -> str:
