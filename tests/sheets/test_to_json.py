@@ -10,7 +10,8 @@ import pytest
 from headledger import __version__
 from headledger.diagnosis.result import CauseFound, CauseKind, CheckResult, Place, Verdict
 from headledger.quantities import Dimension, Unit
-from headledger.sheets.to_json import cause_size, result_to_json, result_to_text, stamp
+from headledger.sheets.json_values import stamp
+from headledger.sheets.to_json import cause_size, result_to_json, result_to_text
 from tests.made_results import BAR, METRE, PSIG, found_gauge
 
 

@@ -9,12 +9,10 @@ import click
 
 from headledger.cli.exit_codes import ExitCode
 from headledger.cli.streams import ProgressLine, result_stream, say
-from headledger.cli.targets import refuse_bad_target
+from headledger.cli.targets import TO_STDOUT, refuse_bad_json, write_json
 
 if TYPE_CHECKING:
     from headledger.diagnosis.result import CheckResult
-
-_TO_STDOUT = "-"
 
 
 @click.command()
@@ -28,8 +26,11 @@ _TO_STDOUT = "-"
     multiple=True,
     help='What was found on site, such as "zero-check PT-7 = 0.01 bar" or "open-strainer STR-1 = yes"; may be given often.',
 )
+@click.option(
+    "--sight", is_flag=True, help="Report also how small a trouble these readings could have shown, and where."
+)
 @click.option("-q", "--quiet", is_flag=True, help="No report and no progress: the exit status is the answer.")
-def check(job: str, json_path: str | None, no_color: bool, answers: tuple[str, ...], quiet: bool) -> int:
+def check(job: str, json_path: str | None, no_color: bool, answers: tuple[str, ...], sight: bool, quiet: bool) -> int:
     """Say which gauges of JOB can be believed.
 
     Exit status: 0 nothing is wrong; 1 something is; 2 the job or its logs cannot be used; 3 nothing can be checked;
@@ -38,18 +39,20 @@ def check(job: str, json_path: str | None, no_color: bool, answers: tuple[str, .
     from headledger.cli.samples import job_folder
 
     folder = job_folder(job)
-    refuse_bad_target(None if json_path == _TO_STDOUT else json_path, "--json")
+    refuse_bad_json(json_path)
     from headledger.diagnosis.check import check_folder
 
     with ProgressLine(sys.stderr, shown=not quiet) as progress:
         result = check_folder(folder, answers=answers, on_progress=progress)
     if json_path:
-        _write_json(result, json_path)
-    if not quiet and json_path != _TO_STDOUT:
+        from headledger.sheets.to_json import result_to_text
+
+        write_json(lambda ascii_only: result_to_text(result, ascii_only=ascii_only), json_path)
+    if not quiet and json_path != TO_STDOUT:
         from headledger.sheets.text import write_report
 
         with result_stream() as stream:
-            write_report(result, stream, color=not no_color)
+            write_report(result, stream, color=not no_color, sight=sight)
     _name_unchecked(result)
     return exit_code_of(result)
 
@@ -63,24 +66,6 @@ def exit_code_of(result: CheckResult) -> ExitCode:
         Outcome.TROUBLE: ExitCode.TROUBLE,
         Outcome.NOTHING_CHECKED: ExitCode.NOTHING_CHECKED,
     }[outcome_of(result)]
-
-
-def _write_json(result: CheckResult, json_path: str) -> None:
-    from pathlib import Path
-
-    from headledger.records.files import write_whole
-    from headledger.sheets.to_json import result_to_text
-
-    if json_path == _TO_STDOUT:
-        with result_stream() as stream:
-            speaks_utf_8 = (stream.encoding or "").lower().replace("-", "") == "utf8"
-            stream.write(result_to_text(result, ascii_only=not speaks_utf_8))
-        return
-    try:
-        # A file name that is no UTF-8 becomes an escape, which JSON knows too.
-        write_whole(Path(json_path), result_to_text(result).encode("utf-8", "backslashreplace"))
-    except OSError as error:
-        raise click.FileError(json_path, hint=error.strerror or str(error)) from error
 
 
 def _name_unchecked(result: CheckResult) -> None:

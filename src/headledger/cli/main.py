@@ -12,6 +12,7 @@ from headledger.cli.check import check
 from headledger.cli.exit_codes import ExitCode
 from headledger.cli.expect import expect
 from headledger.cli.open import open_job
+from headledger.cli.plan import plan
 from headledger.cli.sheet import sheet
 from headledger.cli.streams import prepare_streams, say
 from headledger.errors import HeadledgerError, JobError, NothingToCheckError
@@ -29,6 +30,7 @@ def commands() -> None:
 
 commands.add_command(open_job)
 commands.add_command(check)
+commands.add_command(plan)
 commands.add_command(sheet)
 commands.add_command(expect)
 

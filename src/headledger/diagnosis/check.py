@@ -17,6 +17,7 @@ from headledger.diagnosis.readings import read_timeline
 from headledger.diagnosis.report import cause_found, gauge_found, spells_found
 from headledger.diagnosis.result import CheckResult, InputFile, Trend
 from headledger.diagnosis.search import search
+from headledger.diagnosis.sight import sight_of
 from headledger.diagnosis.site_actions import parse_answer
 from headledger.diagnosis.spells import find_spells, unread_spells
 from headledger.diagnosis.trait_findings import trait_findings
@@ -141,6 +142,7 @@ def check_job(
         remarks=(*job.remarks, *timeline.remarks, *unread_spells(job, stretches), *circulations(model)),
         next_checks=next_checks(model, posterior, findings),
         answers=tuple(answers),
+        sight=sight_of(model, [state.point for state in posterior.frame.linear.states]),
         trend=Trend(start_s=timeline.start_s, width_s=timeline.width_s, reading_pa=timeline.reading_pa),
     )
 

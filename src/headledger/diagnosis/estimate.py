@@ -128,14 +128,16 @@ class Model:
     ----------
     layout : Layout
     spells : sequence of SpellMeans
+    certain : bool
+        Whether everything that the job states is taken as exactly so: to solve a state, not to judge one.
     """
 
-    def __init__(self, layout: Layout, spells: Sequence[SpellMeans]) -> None:
+    def __init__(self, layout: Layout, spells: Sequence[SpellMeans], *, certain: bool = False) -> None:
         self.layout = layout
         self.spells = tuple(spells)
         self._cut_off_m: dict[str, tuple[float, float]] = {}
         self.inputs: tuple[UncertainInput, ...] = (
-            *uncertain_inputs(layout),
+            *(() if certain else uncertain_inputs(layout)),
             *(
                 UncertainInput(kind=InputKind.CUT_OFF, owner=name, sd=HEAD_SD_M)
                 for name in sorted({name for spell in self.spells for name in cut_off_sections(layout, spell).values()})

@@ -328,6 +328,148 @@ class Trend:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Alike:
+    """A cause whose mark on the readings looks like another's.
+
+    Parameters
+    ----------
+    kind : CauseKind
+    place : Place
+    correlation : float
+        Of the two white marks, 0 to 1: at 1 no reading of the log tells them apart. [-]
+    elsewhere : bool
+        Whether it would send one to another place.
+    """
+
+    kind: CauseKind
+    place: Place
+    correlation: float
+    elsewhere: bool
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class TroubleSight:
+    """The smallest trouble of one kind at one place that a set of readings would show. Sizes as those of a cause, without sign.
+
+    Parameters
+    ----------
+    kind : CauseKind
+    place : Place
+    unit : Unit or None
+        As of a cause.
+    seen : float or None
+        The smallest that would be seen; None where the largest that is physical would not.
+    placed, named : float or None
+        The smallest that could be told from anything at another place, and from every other cause; None where none could.
+    matters : float
+        The smallest that matters: 0.3 of a tolerance at the gauge that feels it most.
+    pa_per_size : float or None
+        Pressure that a unit of it takes at `flow_m3_s`; None where the size is no loss. [Pa]
+    flow_m3_s : float or None
+        The greatest flow of its run. [m³/s]
+    alike : tuple of Alike
+        What it would be confused with, the likest first.
+    says : str
+    """
+
+    kind: CauseKind
+    place: Place
+    unit: Unit | None
+    seen: float | None
+    placed: float | None
+    named: float | None
+    matters: float
+    pa_per_size: float | None = None
+    flow_m3_s: float | None = None
+    alike: tuple[Alike, ...] = ()
+    says: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class GaugeSight:
+    """Whether a gauge could pass if nothing were wrong.
+
+    Parameters
+    ----------
+    tag : str
+    unit : Unit
+    verdict : Verdict
+        Of a faultless gauge: pass, unresolved where the uncertainty exceeds what the tolerance allows, or unchecked.
+    u95_pa, tolerance_pa : float
+        [Pa]
+    says : str
+    """
+
+    tag: str
+    unit: Unit
+    verdict: Verdict
+    u95_pa: float
+    tolerance_pa: float
+    says: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class FurtherReading:
+    """One reading more, and how far it would sharpen the sight.
+
+    Parameters
+    ----------
+    station : str
+        Where a gauge more would hang; empty for a flow state.
+    kind : SpellKind or None
+        Of the flow state.
+    flow_factor : float or None
+        Of a flowing state: its flows as parts of the greatest ones. [-]
+    sharper_ratio : float
+        Geometric mean, over all troubles, of the smallest size that could be placed: before over after. [-]
+    could_pass : tuple of str
+        Gauges that could pass then and cannot without it.
+    says : str
+    """
+
+    station: str = ""
+    kind: SpellKind | None = None
+    flow_factor: float | None = None
+    sharper_ratio: float
+    could_pass: tuple[str, ...] = ()
+    says: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Sight:
+    """What a set of readings could show.
+
+    Parameters
+    ----------
+    states : tuple of str
+        The flow states that it rests on, in words.
+    troubles : tuple of TroubleSight
+    gauges : tuple of GaugeSight
+    further : tuple of FurtherReading
+        The one that would help most first.
+    assumed : tuple of str
+        What was taken because nobody said it, a sentence each.
+    head_weight_pa_m : float
+        What a metre of head weighs. [Pa/m]
+    """
+
+    head_weight_pa_m: float
+    states: tuple[str, ...]
+    troubles: tuple[TroubleSight, ...]
+    gauges: tuple[GaugeSight, ...]
+    further: tuple[FurtherReading, ...] = ()
+    assumed: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PlanResult:
+    """What a visit's readings could show, before there are any."""
+
+    job: Job
+    sight: Sight
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class CheckResult:
     """Everything a check found.
 
@@ -352,6 +494,8 @@ class CheckResult:
         The most information a minute first.
     answers : tuple of str
         Results of actions that were taken into account, as they were given.
+    sight : Sight or None
+        What the readings at hand could have shown; None where it was not asked for.
     """
 
     job: Job
@@ -366,3 +510,4 @@ class CheckResult:
     trend: Trend | None = None
     next_checks: tuple[NextCheck, ...] = ()
     answers: tuple[str, ...] = ()
+    sight: Sight | None = None

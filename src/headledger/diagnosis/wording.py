@@ -8,7 +8,8 @@ from datetime import datetime
 from typing import TYPE_CHECKING
 from zoneinfo import ZoneInfo
 
-from headledger.diagnosis.result import CauseKind, Place, Verdict
+from headledger.diagnosis.result import CauseKind, FurtherReading, GaugeSight, Place, TroubleSight, Verdict
+from headledger.plant.job import Job, SpellKind
 from headledger.quantities import format_quantity as amount
 
 if TYPE_CHECKING:  # the screen words things before anything heavy is loaded
@@ -258,3 +259,85 @@ def verdict_sentence(gauge: Gauge, judged: Judged, causes: Sequence[Finding], gi
         leans = ", given " + " and ".join(f"{kind_words(f.kind)} at {place_words(f.place)}" for f in given)
         leans = leans.replace(" at the whole job", "")
     return f"{gauge.tag}: {words}{leans}{because}: {numbers}."
+
+
+def state_words(job: Job, kind: SpellKind, flows: Sequence[tuple[str, float]]) -> str:
+    """A flow state in words; flows in m³/s, by run."""
+    if kind is SpellKind.STILL:
+        return "still"
+    named = ", ".join(f"{run} {amount(flow_m3_s, job.display.flow)}" for run, flow_m3_s in flows)
+    return named or "flowing, no flow known"
+
+
+def sight_size(job: Job, trouble: TroubleSight, size: float | None) -> str:
+    """A size of a trouble as it is spoken of: a pressure or length, a loss as the pressure it takes, a ratio as a percentage off."""
+    if size is None:
+        return "never"
+    if trouble.pa_per_size is not None:
+        return amount(size * trouble.pa_per_size, job.display.pressure, digits=2)
+    if trouble.unit is not None:
+        return amount(size, trouble.unit.as_difference(), digits=2)
+    return f"{100.0 * size:.2g} %"
+
+
+def trouble_sight_sentence(job: Job, trouble: TroubleSight) -> str:
+    """The smallest trouble of a kind at a place that would be seen, placed and named, and what it looks like."""
+    at = place_words(trouble.place)
+    what = (
+        f"{_capital(kind_words(trouble.kind))}, {at}" if at != "the whole job" else _capital(kind_words(trouble.kind))
+    )
+    flow = f" at {amount(trouble.flow_m3_s, job.display.flow)}" if trouble.flow_m3_s else ""
+    if trouble.seen is None:
+        return f"{what}: not seen at any size that is physical."
+    parts = [f"seen from {sight_size(job, trouble, trouble.seen)}{flow}"]
+    same = [a for a in trouble.alike if not a.elsewhere and trouble.named is None]
+    apart = [a for a in trouble.alike if a.elsewhere]
+    if trouble.placed is None:
+        parts.append("at no size told from trouble elsewhere")
+    elif trouble.placed > 1.05 * trouble.seen:
+        parts.append(f"told from trouble elsewhere from {sight_size(job, trouble, trouble.placed)}")
+    if apart:
+        parts.append(
+            f"looks like {kind_words(apart[0].kind)} at {place_words(apart[0].place)}".replace(" at the whole job", "")
+        )
+    if same:
+        parts.append(f"readings alone do not tell it from {kind_words(same[0].kind)}")
+    return f"{what}: {'; '.join(parts)}."
+
+
+def gauge_sight_sentence(sight: GaugeSight, because: str) -> str:
+    """Whether a faultless gauge could pass, and what keeps it from it."""
+    if sight.verdict is Verdict.UNCHECKED:
+        return f"{sight.tag}: {VERDICT_WORDS[Verdict.UNCHECKED]}{because}."
+    unit = sight.unit.as_difference()
+    doubt, limit = amount(sight.u95_pa, unit, digits=2), amount(sight.tolerance_pa, unit, digits=2)
+    if sight.verdict is Verdict.PASS:
+        return f"{sight.tag} can pass: ± {doubt} (k = 2) against a tolerance of ± {limit}."
+    return f"{sight.tag} cannot pass, however good it is: ± {doubt} (k = 2) is too much for its tolerance of ± {limit}."
+
+
+def further_sentence(job: Job, more: FurtherReading) -> str:
+    """What one reading more would bring."""
+    if more.station:
+        what = f"A gauge at {more.station}, as good as the job's best,"
+    elif more.kind is SpellKind.STILL:
+        what = "A still spell"
+    else:
+        what = f"A spell at {more.flow_factor:g} times the greatest flow"
+    sharper = f" places troubles {more.sharper_ratio:.2g} times smaller" if more.sharper_ratio >= 1.05 else ""
+    passing = f" lets {', '.join(more.could_pass)} pass" if more.could_pass else ""
+    return f"{what}{sharper}{' and' if sharper and passing else ''}{passing}."
+
+
+def twins_sentence(tags: Sequence[str], kinds: Sequence[CauseKind], *, every: bool) -> str:
+    """Which causes at the same gauge readings alone do not tell apart, and what does."""
+    names = [kind_words(kind) for kind in kinds]
+    where = "every gauge" if every else ", ".join(tags)
+    does = "a zero check, a survey or a look for gas" if CauseKind.LEG_GAS in kinds else "a zero check or a survey"
+    listed = f"{', '.join(names[:-1])} and {names[-1]}"
+    return f"At {where} readings alone do not tell {listed} apart; {does} does."
+
+
+def _capital(text: str) -> str:
+    """The text with a capital letter first."""
+    return text[:1].upper() + text[1:]

@@ -17,7 +17,7 @@ from headledger.sheets.columns import flow_words
 from headledger.sheets.drawing import Band, Beads, Drawing, Fill, Line, Mark, Note, Panel, Point, Role, Stop, widened
 from headledger.sheets.marks import MARKS, by_trouble
 from headledger.sheets.numbers import decimals_for, fixed
-from headledger.sheets.paths import Leg, Way, way_past
+from headledger.sheets.paths import Leg, Way, places_along, way_past
 
 VERDICT_ROLES = {
     Verdict.FAIL: Role.FAIL,
@@ -26,8 +26,6 @@ VERDICT_ROLES = {
     Verdict.PASS: Role.PASS,
 }
 
-# A run without length is drawn this much of the way long, so that what it takes of the head can be seen.
-_LEAST_SHARE = 0.06
 # A head doubted more than this is not known; no line is drawn for it. [m]
 _UNKNOWN_M = 15.0
 # Where grade line and gauges would fill less than this share of one scale, the scale is broken between them and the pipe.
@@ -140,7 +138,7 @@ def tells_most(result: CheckResult) -> int:
 
 
 def _frame(result: CheckResult, way: Way) -> _Frame:
-    at = _positions(way)
+    at = places_along(way)
     unit = result.job.display.length
     scale = 1.0 / unit.factor
     bare = _Frame(result=result, way=way, at=at, scale=scale, unit=unit.text, panels=())
@@ -158,18 +156,6 @@ def _frame(result: CheckResult, way: Way) -> _Frame:
     else:
         panels = (Panel(low=foot, high=top, share=1.0, name=name),)
     return _Frame(result=result, way=way, at=at, scale=scale, unit=unit.text, panels=panels)
-
-
-def _positions(way: Way) -> tuple[float, ...]:
-    """Where each station stands, from 0 to 1: by length, with a least share for what has none."""
-    total = sum(leg.run.length_m for leg in way.legs)
-    least = min(_LEAST_SHARE, 0.5 / len(way.legs)) * total if total > 0.0 else 1.0
-    widths = [max(leg.run.length_m, least) for leg in way.legs]
-    places, done = [0.0], 0.0
-    for width in widths:
-        done += width
-        places.append(done / sum(widths))
-    return tuple(places)
 
 
 def _grade_range(frame: _Frame) -> tuple[float, float]:

@@ -55,6 +55,22 @@ class Way:
         return f"{names[0]} to {names[-1]}"
 
 
+# A run without length is drawn this much of the way long, so that what it takes of the head can be seen.
+_LEAST_SHARE = 0.06
+
+
+def places_along(way: Way) -> tuple[float, ...]:
+    """Where each station stands along a way, from 0 to 1: by length, with a least share for what has none."""
+    total = sum(leg.run.length_m for leg in way.legs)
+    least = min(_LEAST_SHARE, 0.5 / len(way.legs)) * total if total > 0.0 else 1.0
+    widths = [max(leg.run.length_m, least) for leg in way.legs]
+    places, done = [0.0], 0.0
+    for width in widths:
+        done += width
+        places.append(done / sum(widths))
+    return tuple(places)
+
+
 def ways_through(job: Job) -> tuple[Way, ...]:
     """Ways that together pass every run, the one with the most gauges first.
 

@@ -7,7 +7,7 @@ import math
 from io import StringIO
 
 from headledger.diagnosis.result import CheckResult, GaugeFound, GaugeSpell, SpellFound
-from headledger.sheets.to_json import stamp
+from headledger.sheets.json_values import stamp
 
 COLUMNS = (
     "tag",

@@ -4,12 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
 from datetime import tzinfo
-from io import StringIO
-from typing import Any, TextIO
+from functools import partial
+from typing import TextIO
 from zoneinfo import ZoneInfo
 
 from rich.console import Console
-from rich.padding import Padding
 from rich.table import Table
 from rich.text import Text
 
@@ -18,6 +17,8 @@ from headledger.sheets.columns import error_columns, flows_line
 from headledger.sheets.headline import cause_label, check_worth, headline, told_causes
 from headledger.sheets.marks import CAUTIONS, by_trouble, verdict_label
 from headledger.sheets.numbers import clock_range, percent
+from headledger.sheets.plain import bulleted, hanging, plain_table, print_report, print_section
+from headledger.sheets.sight_text import print_sight
 
 _STYLES = {
     Verdict.FAIL: "bold red",
@@ -27,13 +28,11 @@ _STYLES = {
 }
 _MOST_REJECTS = 10
 _MOST_REMARKS = 20
-# Square brackets are units and colons are times, never markup or pictures.
-_TEXT_AS_IT_IS: dict[str, Any] = {"highlight": False, "markup": False, "emoji": False}
-# Of a pipe or a file, where no terminal says how wide it is.
-_PLAIN_WIDTH = 80
 
 
-def write_report(result: CheckResult, stream: TextIO, *, width: int | None = None, color: bool = True) -> None:
+def write_report(
+    result: CheckResult, stream: TextIO, *, width: int | None = None, color: bool = True, sight: bool = False
+) -> None:
     """Write the report.
 
     Parameters
@@ -44,49 +43,28 @@ def write_report(result: CheckResult, stream: TextIO, *, width: int | None = Non
         Columns; the terminal's, or 80 where there is none.
     color : bool
         False prints no colour even on a terminal; a stream that is no terminal never gets any.
+    sight : bool
+        Whether to say also how small a trouble these readings could have shown.
     """
-    if stream.isatty():
-        _print_report(result, Console(file=stream, width=width, no_color=None if color else True, **_TEXT_AS_IT_IS))
-        return
-    buffer = StringIO()
-    _print_report(result, Console(file=buffer, width=width or _PLAIN_WIDTH, no_color=True, **_TEXT_AS_IT_IS))
-    stream.writelines(line.rstrip() + "\n" for line in buffer.getvalue().splitlines())
+    print_report(partial(_print_report, result, with_sight=sight), stream, width=width, color=color)
 
 
-def _print_report(result: CheckResult, console: Console) -> None:
+def _print_report(result: CheckResult, console: Console, *, with_sight: bool) -> None:
     zone = ZoneInfo(result.job.timezone)
     console.print(Text(result.job.title, style="bold"))
     if result.job.site_name:
         console.print(Text(result.job.site_name))
-    _print_section(console, "", [_headline_table(result)])
-    _print_section(console, f"Spells (times in {result.job.timezone})", [_spell_table(result, zone)])
-    _print_section(console, "Gauges", [_gauge_table(by_trouble(result.gauges))])
-    _print_section(console, "Why", _why_lines(result.gauges))
-    _print_section(console, "Findings", _finding_lines(result.causes))
-    _print_section(console, "Next checks", _check_lines(result))
-    _print_section(console, "Not used from the logs", _reject_lines(result))
-    _print_section(console, "Taken as given", _remark_lines(result.remarks))
-    _print_section(console, "Caution", [_hanging("-", Text(line)) for line in CAUTIONS])
-
-
-def _print_section(console: Console, title: str, parts: Iterable[Table | Text]) -> None:
-    blocks = list(parts)
-    if not blocks:
-        return
-    console.print()
-    if title:
-        console.print(Text(title, style="bold"))
-    for block in blocks:
-        console.print(Padding(block, (0, 0, 0, 2)) if title else block)
-
-
-def _hanging(label: str | Text, body: Text, *, label_width: int | None = None) -> Table:
-    """A label and a text that wraps beside it."""
-    grid = Table.grid(padding=(0, 1))
-    grid.add_column(width=label_width, no_wrap=True)
-    grid.add_column(overflow="fold")
-    grid.add_row(label if isinstance(label, Text) else Text(label), body)
-    return grid
+    print_section(console, "", [_headline_table(result)])
+    print_section(console, f"Spells (times in {result.job.timezone})", [_spell_table(result, zone)])
+    print_section(console, "Gauges", [_gauge_table(by_trouble(result.gauges))])
+    print_section(console, "Why", _why_lines(result.gauges))
+    print_section(console, "Findings", _finding_lines(result.causes))
+    print_section(console, "Next checks", _check_lines(result))
+    if with_sight and result.sight is not None:
+        print_sight(result.job, result.sight, console)
+    print_section(console, "Not used from the logs", _reject_lines(result))
+    print_section(console, "Taken as given", _remark_lines(result.remarks))
+    print_section(console, "Caution", bulleted(CAUTIONS))
 
 
 def _headline_table(result: CheckResult) -> Table:
@@ -98,15 +76,8 @@ def _headline_table(result: CheckResult) -> Table:
     return grid
 
 
-def _plain_table(*columns: str, right: frozenset[str] = frozenset()) -> Table:
-    table = Table(box=None, padding=(0, 2, 0, 0), pad_edge=False, show_edge=False, header_style="")
-    for name in columns:
-        table.add_column(Text(name, style="underline"), justify="right" if name in right else "left", overflow="fold")
-    return table
-
-
 def _spell_table(result: CheckResult, zone: tzinfo) -> Table:
-    table = _plain_table("No.", "Kind", "From – until", "Rows", "Flow", right=frozenset({"No.", "Rows"}))
+    table = plain_table("No.", "Kind", "From – until", "Rows", "Flow", right=frozenset({"No.", "Rows"}))
     for spell in result.spells:
         table.add_row(
             str(spell.id),
@@ -120,7 +91,7 @@ def _spell_table(result: CheckResult, zone: tzinfo) -> Table:
 
 def _gauge_table(gauges: Iterable[GaugeFound]) -> Table:
     right = frozenset({"Error", "± u95", "Tolerance", "Outside"})
-    table = _plain_table("Verdict", "Gauge", "Station", "Error", "± u95", "Tolerance", "Unit", "Outside", right=right)
+    table = plain_table("Verdict", "Gauge", "Station", "Error", "± u95", "Tolerance", "Unit", "Outside", right=right)
     for gauge in gauges:
         error, doubt, tolerance = error_columns(gauge)
         table.add_row(
@@ -139,23 +110,23 @@ def _gauge_table(gauges: Iterable[GaugeFound]) -> Table:
 def _why_lines(gauges: Iterable[GaugeFound]) -> Iterator[Table]:
     for gauge in by_trouble(gauges):
         if gauge.why and gauge.verdict is not Verdict.PASS:
-            yield _hanging("-", Text(gauge.why))
+            yield hanging("-", Text(gauge.why))
 
 
 def _finding_lines(causes: Iterable[CauseFound]) -> Iterator[Table]:
     told, rest = told_causes(causes)
     for cause in told:
         body = Text("\n".join([cause_label(cause) + (" (accepted)" if cause.accepted else ""), cause.says]))
-        yield _hanging(Text(percent(cause.probability).rjust(6), style="bold"), body, label_width=6)
+        yield hanging(Text(percent(cause.probability).rjust(6), style="bold"), body, label_width=6)
     if rest:
-        yield _hanging("", Text(rest), label_width=6)
+        yield hanging("", Text(rest), label_width=6)
 
 
 def _check_lines(result: CheckResult) -> Iterator[Table | Text]:
     for text in result.answers:
-        yield _hanging("-", Text(f"Taken into account: {text}"))
+        yield hanging("-", Text(f"Taken into account: {text}"))
     for check in result.next_checks:
-        yield _hanging("-", Text(f"{check.says}\n{check_worth(check)}"))
+        yield hanging("-", Text(f"{check.says}\n{check_worth(check)}"))
 
 
 def _reject_lines(result: CheckResult) -> Iterator[Table | Text]:
@@ -169,7 +140,7 @@ def _reject_lines(result: CheckResult) -> Iterator[Table | Text]:
         yield Text(f"{number} × {why}")
     for reject in result.rejects[:_MOST_REJECTS]:
         column = f", {reject.column}" if reject.column else ""
-        yield _hanging("-", Text(f"{reject.file}, line {reject.line}{column}: {reject.text!r}, {reject.why}"))
+        yield hanging("-", Text(f"{reject.file}, line {reject.line}{column}: {reject.text!r}, {reject.why}"))
     left = result.reject_count - min(len(result.rejects), _MOST_REJECTS)
     if left:
         yield Text(f"and {left} more; the result file (--json) lists the first {len(result.rejects)}.")
@@ -177,6 +148,6 @@ def _reject_lines(result: CheckResult) -> Iterator[Table | Text]:
 
 def _remark_lines(remarks: tuple[str, ...]) -> Iterator[Table | Text]:
     for remark in remarks[:_MOST_REMARKS]:
-        yield _hanging("-", Text(remark))
+        yield hanging("-", Text(remark))
     if len(remarks) > _MOST_REMARKS:
         yield Text(f"and {len(remarks) - _MOST_REMARKS} more; the result file (--json) has them all.")

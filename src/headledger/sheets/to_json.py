@@ -3,8 +3,6 @@
 from __future__ import annotations
 
 import json
-import math
-from datetime import UTC, datetime
 from typing import Any
 
 from headledger import __version__
@@ -15,17 +13,17 @@ from headledger.diagnosis.result import (
     GaugeFound,
     GaugeSpell,
     NextCheck,
-    Place,
     Rival,
     RunGrade,
     SpellFound,
 )
 from headledger.plant.digest import Reject
 from headledger.quantities import Unit
+from headledger.sheets.json_values import in_unit, number, place_to_json, scaled, stamp
+from headledger.sheets.sight_json import sight_to_json
 
 RESULT_FORMAT = 1
 
-_SIGNIFICANT_DIGITS = 6
 _SECONDS_PER_HOUR = 3600.0
 _PER_HOUR = frozenset({CauseKind.DRIFT, CauseKind.LEAK})
 _IN_SECONDS = frozenset({CauseKind.SLUGGISH, CauseKind.CLOCK_OFFSET})
@@ -44,13 +42,14 @@ def result_to_json(result: CheckResult) -> dict[str, Any]:
             ],
         },
         "spells": [_spell(spell, result.job.display.flow, result.job.display.length) for spell in result.spells],
-        "clean_probability": _number(result.clean_probability),
+        "clean_probability": number(result.clean_probability),
         "gauges": [_gauge(gauge) for gauge in result.gauges],
         "causes": [_cause(cause) for cause in result.causes],
         "next_checks": [_next_check(check) for check in result.next_checks],
         "rejects": [_reject(reject) for reject in result.rejects],
         "remarks": list(result.remarks),
         "answers": list(result.answers),
+        "sight": None if result.sight is None else sight_to_json(result.job, result.sight),
     }
 
 
@@ -68,30 +67,7 @@ def cause_size(cause: CauseFound) -> tuple[float | None, float | None, str]:
     times = _SECONDS_PER_HOUR if cause.kind in _PER_HOUR else 1.0
     suffix = "/h" if cause.kind in _PER_HOUR else ""
     scale = times / cause.unit.factor
-    return _scaled(cause.size, scale), _scaled(cause.u95, scale), cause.unit.as_difference().text + suffix
-
-
-def stamp(time_s: float | None) -> str | None:
-    """ISO 8601 in UTC with a Z, to the second or, where there is a fraction, the millisecond."""
-    if time_s is None or not math.isfinite(time_s):
-        return None
-    time = datetime.fromtimestamp(round(time_s, 3), UTC)
-    return time.isoformat(timespec="milliseconds" if time.microsecond else "seconds").replace("+00:00", "Z")
-
-
-def _number(value: float | None) -> float | None:
-    if value is None or not math.isfinite(value):
-        return None
-    return float(f"{value:.{_SIGNIFICANT_DIGITS}g}") + 0.0
-
-
-def _scaled(value: float | None, scale: float) -> float | None:
-    return None if value is None else value * scale
-
-
-def _in_unit(value_si: float | None, unit: Unit) -> float | None:
-    """A pressure, flow or length of a unit without an offset."""
-    return _number(_scaled(value_si, 1.0 / unit.factor))
+    return scaled(cause.size, scale), scaled(cause.u95, scale), cause.unit.as_difference().text + suffix
 
 
 def _spell(spell: SpellFound, flow_unit: Unit, length_unit: Unit) -> dict[str, Any]:
@@ -104,8 +80,8 @@ def _spell(spell: SpellFound, flow_unit: Unit, length_unit: Unit) -> dict[str, A
         "flows": [
             {
                 "run": flow.run,
-                "value": _in_unit(flow.flow_m3_s, flow_unit),
-                "u95": _in_unit(flow.u95_m3_s, flow_unit),
+                "value": in_unit(flow.flow_m3_s, flow_unit),
+                "u95": in_unit(flow.u95_m3_s, flow_unit),
                 "unit": flow_unit.text,
             }
             for flow in spell.flows
@@ -118,12 +94,12 @@ def _grade(grade: RunGrade, unit: Unit) -> dict[str, Any]:
     return {
         "run": grade.run,
         "open": grade.is_open,
-        "start": _in_unit(grade.start_m, unit),
-        "end": _in_unit(grade.end_m, unit),
-        "start_u95": _in_unit(grade.start_u95_m, unit),
-        "end_u95": _in_unit(grade.end_u95_m, unit),
+        "start": in_unit(grade.start_m, unit),
+        "end": in_unit(grade.end_m, unit),
+        "start_u95": in_unit(grade.start_u95_m, unit),
+        "end_u95": in_unit(grade.end_u95_m, unit),
         "unit": unit.text,
-        "steps": [{"cause": step.cause, "drop": _in_unit(step.drop_m, unit)} for step in grade.steps],
+        "steps": [{"cause": step.cause, "drop": in_unit(step.drop_m, unit)} for step in grade.steps],
     }
 
 
@@ -133,10 +109,10 @@ def _gauge(gauge: GaugeFound) -> dict[str, Any]:
         "station": gauge.station,
         "unit": gauge.unit.text,
         "verdict": gauge.verdict.value,
-        "outside_probability": _number(gauge.outside_probability),
-        "error": _in_unit(gauge.error_pa, gauge.unit),
-        "u95": _in_unit(gauge.u95_pa, gauge.unit),
-        "tolerance": _in_unit(gauge.tolerance_pa, gauge.unit),
+        "outside_probability": number(gauge.outside_probability),
+        "error": in_unit(gauge.error_pa, gauge.unit),
+        "u95": in_unit(gauge.u95_pa, gauge.unit),
+        "tolerance": in_unit(gauge.tolerance_pa, gauge.unit),
         "spells": [_gauge_spell(spell, gauge.unit) for spell in gauge.spells],
         "causes": list(gauge.causes),
         "given": list(gauge.given),
@@ -147,9 +123,9 @@ def _gauge(gauge: GaugeFound) -> dict[str, Any]:
 def _gauge_spell(spell: GaugeSpell, unit: Unit) -> dict[str, Any]:
     return {
         "id": spell.id,
-        "reading": _in_unit(spell.reading_pa, unit),
-        "expected": _in_unit(spell.expected_pa, unit),
-        "u95": _in_unit(spell.u95_pa, unit),
+        "reading": in_unit(spell.reading_pa, unit),
+        "expected": in_unit(spell.expected_pa, unit),
+        "u95": in_unit(spell.u95_pa, unit),
     }
 
 
@@ -157,13 +133,13 @@ def _cause(cause: CauseFound) -> dict[str, Any]:
     size, u95, unit_text = cause_size(cause)
     return {
         "kind": cause.kind.value,
-        "at": _place(cause.place),
+        "at": place_to_json(cause.place),
         # a ratio of units is exact, and rounding would put it outside its u95 of nothing
-        "size": size if u95 == 0.0 else _number(size),
-        "u95": _number(u95),
+        "size": size if u95 == 0.0 else number(size),
+        "u95": number(u95),
         "unit": unit_text,
         "start": stamp(cause.start_s),
-        "probability": _number(cause.probability),
+        "probability": number(cause.probability),
         "accepted": cause.accepted,
         "rivals": [_rival(rival) for rival in cause.rivals],
         "says": cause.says,
@@ -173,9 +149,9 @@ def _cause(cause: CauseFound) -> dict[str, Any]:
 def _next_check(check: NextCheck) -> dict[str, Any]:
     return {
         "action": check.action,
-        "at": _place(check.place),
-        "gain_bits": _number(check.gain_bits),
-        "minutes": _number(check.minutes),
+        "at": place_to_json(check.place),
+        "gain_bits": number(check.gain_bits),
+        "minutes": number(check.minutes),
         "separates": [list(pair) for pair in check.separates],
         "says": check.says,
         "caution": check.caution,
@@ -185,20 +161,9 @@ def _next_check(check: NextCheck) -> dict[str, Any]:
 def _rival(rival: Rival) -> dict[str, Any]:
     return {
         "kind": rival.kind.value,
-        "at": _place(rival.place),
-        "probability": _number(rival.probability),
+        "at": place_to_json(rival.place),
+        "probability": number(rival.probability),
     }
-
-
-def _place(place: Place) -> dict[str, Any]:
-    named: dict[str, Any] = {
-        "gauge": place.gauge,
-        "gauges": list(place.gauges),
-        "run": place.run,
-        "station": place.station,
-    }
-    found = {key: value for key, value in named.items() if value}
-    return found if place.distance_m is None else found | {"distance": _number(place.distance_m)}
 
 
 def _reject(reject: Reject) -> dict[str, Any]:

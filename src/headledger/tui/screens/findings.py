@@ -19,6 +19,7 @@ from headledger.sheets.marks import CAUTIONS
 from headledger.sheets.paths import way_past, ways_through
 from headledger.tui.gauge_search import GaugeSearch
 from headledger.tui.screens.gauge import GaugeScreen
+from headledger.tui.screens.sight import SightScreen
 from headledger.tui.widgets.answers import Answers
 from headledger.tui.widgets.findings_list import FindingsList
 from headledger.tui.widgets.gauge_detail import GaugeDetail
@@ -55,6 +56,7 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
 - **w** draws another way through the piping
 - **a** shows the answers in full, or a line each
 - **f** shows the findings, what the data cannot tell them from, and the next checks, and leads back; **g** leads to the gauges
+- **s** shows how small a trouble these readings could have shown, and where
 - **r** checks the job again, with what is in its folder now
 """
     COMMANDS: ClassVar = Screen.COMMANDS | {GaugeSearch}
@@ -64,6 +66,7 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
         Binding("w", "way", "Way", id="way"),
         Binding("a", "unfold", "Answers", id="unfold"),
         Binding("f", "findings", "Findings", id="findings"),
+        Binding("s", "sight", "Sight", id="sight"),
         Binding("g", "gauges", "Gauges", id="gauges", show=False),
         Binding("enter", "open", "Gauge", id="open", priority=True),
         Binding("r", "again", "Again", id="again", tooltip="Check the job again, with what is in its folder now"),
@@ -106,6 +109,8 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
 
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Only what makes sense here has a key: another way where there is one."""
+        if action == "sight":
+            return self.result.sight is not None
         return len(self._ways) > 1 if action == "way" else True
 
     def watch_spell_index(self) -> None:
@@ -170,6 +175,11 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
         """Open the page of the chosen gauge."""
         if self._tag:
             self.open_gauge(self._tag)
+
+    def action_sight(self) -> None:
+        """Show what these readings could have shown."""
+        if self.result.sight is not None:
+            self.app.push_screen(SightScreen(self.result.job, self.result.sight, self.way_index))
 
     def action_again(self) -> None:
         """Check the job anew."""
