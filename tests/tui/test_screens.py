@@ -25,6 +25,7 @@ from headledger.tui.gauge_search import GaugeSearch
 from headledger.tui.screens.ended import EndedScreen
 from headledger.tui.screens.findings import FindingsScreen
 from headledger.tui.screens.gauge import GaugeScreen
+from headledger.tui.screens.sight import SightScreen
 from headledger.tui.screens.working import WorkingScreen
 from headledger.tui.widgets.answers import Answers
 from headledger.tui.widgets.findings_list import FindingsList
@@ -503,3 +504,38 @@ async def wait_until(pilot: Pilot[None], holds: Callable[[], bool]) -> None:
         if holds():
             return
     raise AssertionError("it never came to hold")
+
+
+@pytest.mark.parametrize("size", [SMALL, LARGE], ids=["80x24", "160x48"])
+async def test_sight_screen_shows_picture_and_tables_and_leads_back(size: tuple[int, int]):
+    app = HeadledgerApp(Path("riser"), check=answers_with(sample_result("riser-drift")))
+    async with app.run_test(size=size) as pilot:
+        await app.workers.wait_for_complete()
+        await pilot.pause()
+        await pilot.press("s")
+        await pilot.pause()
+        assert isinstance(app.screen, SightScreen)
+        drawing = app.screen.query_one(PictureView).drawing
+        assert drawing is not None
+        assert {"PT-24", "PT-32"} <= {mark.label for mark in drawing.marks}
+        titles = [str(title.content) for title in app.screen.query(".section-title").results(Static)]
+        assert titles == [
+            "Readings",
+            "Gauges",
+            "Pipe, meters and liquid",
+            "What these readings cannot do",
+            "One reading more",
+        ]
+        await pilot.press("escape")
+        await pilot.pause()
+        assert isinstance(app.screen, FindingsScreen)
+
+
+async def test_result_without_a_sight_has_no_key_for_it(troubled_result: CheckResult):
+    app = HeadledgerApp(Path("riser"), check=answers_with(troubled_result))
+    async with app.run_test(size=SMALL) as pilot:
+        await app.workers.wait_for_complete()
+        await pilot.pause()
+        await pilot.press("s")
+        await pilot.pause()
+        assert isinstance(app.screen, FindingsScreen)

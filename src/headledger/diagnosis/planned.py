@@ -16,7 +16,7 @@ from headledger.diagnosis.averages import DEFAULT_SAMPLE_NOISE_TOLERANCES
 from headledger.diagnosis.estimate import FREE_VELOCITY_M_S, Model
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.means import SpellMeans
-from headledger.diagnosis.state import Point, State, evaluate, spell_graph
+from headledger.diagnosis.state import Applied, Point, State, evaluate, spell_graph
 from headledger.physics.tapping import AIR_WEIGHT_PA_M
 from headledger.plant.job import SpellKind, StatedFlow, StatedSpell
 from headledger.plant.runs import RunState
@@ -89,7 +89,7 @@ def plan_states(layout: Layout, states: Sequence[StatedSpell] = ()) -> Planned:
     return Planned(spells=tuple(spells), points=tuple(points), assumed=tuple(assumed))
 
 
-def perfect(layout: Layout, spell: SpellMeans, point: Point) -> SpellMeans:
+def perfect(layout: Layout, spell: SpellMeans, point: Point, applied: Applied | None = None) -> SpellMeans:
     """The spell with what perfect gauges, and perfect meters where it has a flow, would say at a point.
 
     Parameters
@@ -98,12 +98,14 @@ def perfect(layout: Layout, spell: SpellMeans, point: Point) -> SpellMeans:
     spell : SpellMeans
         Gauges and meters that are silent in it stay so.
     point : Point
+    applied : Applied, optional
+        Causes that change the hydraulics.
 
     Returns
     -------
     SpellMeans
     """
-    state = evaluate(layout, spell, point)
+    state = evaluate(layout, spell, point, applied=applied)
     return replace(
         spell,
         reading_pa=np.where(np.isfinite(spell.reading_pa), state.reading_pa, np.nan),
@@ -181,28 +183,56 @@ def _solved(layout: Layout, spell: SpellMeans, wanted: Array) -> tuple[SpellMean
         flows = _even_flows(layout, graph.flow, wanted)
     point = Point(reference_head_m=np.zeros(graph.parts), flow_m3_s=flows)
     point = Point(reference_head_m=_heads_mid_range(layout, spell, point), flow_m3_s=flows)
-    guide = np.full(layout.run_count, np.nan)
-    if flows.size:
-        guide[graph.basis] = flows
-    given = np.isfinite(spell.flow_m3_s)
-    slack = np.where(given, 1e-9, LOOSE_SHARE * np.maximum(np.abs(np.nan_to_num(guide)), 0.1 * layout.area_m2))
-    guided = replace(
-        spell,
-        flow_m3_s=np.where(given, spell.flow_m3_s, guide),
-        flow_noise_m3_s=np.where(given, 1e-9, slack),
-        flow_relative_sd=np.zeros(layout.run_count),
-        flow_absolute_sd_m3_s=np.zeros(layout.run_count),
-    )
-    point = _settled(layout, guided, point)
+    point = _settled(layout, _guided(layout, spell, flows), point)
     point = Point(reference_head_m=_heads_mid_range(layout, spell, point), flow_m3_s=point.flow_m3_s)
     state = evaluate(layout, spell, point)
     metered = np.array([run.flow_column is not None for run in layout.job.runs])
     heard = replace(
         spell,
         reading_pa=state.reading_pa,
-        flow_m3_s=np.where(given | (metered & (not spell.is_still)), state.flow_m3_s, np.nan),
+        flow_m3_s=np.where(np.isfinite(spell.flow_m3_s) | (metered & (not spell.is_still)), state.flow_m3_s, np.nan),
     )
     return perfect(layout, heard, point), point
+
+
+def with_loss(layout: Layout, spell: SpellMeans, point: Point, run: int, coefficient: float) -> SpellMeans:
+    """What perfect gauges would read in a state with a loss more in one run, the flows that no meter gives solved anew.
+
+    Parameters
+    ----------
+    layout : Layout
+    spell : SpellMeans
+        Of perfect readings.
+    point : Point
+        Its own.
+    run : int
+    coefficient : float
+        On the run's velocity head. [-]
+
+    Returns
+    -------
+    SpellMeans
+    """
+    applied = Applied(loss_k={run: coefficient})
+    silent = replace(spell, reading_pa=np.full(layout.gauge_count, np.nan))
+    solved = _settled(layout, _guided(layout, silent, point.flow_m3_s), point, applied)
+    return perfect(layout, spell, solved, applied)
+
+
+def _guided(layout: Layout, spell: SpellMeans, flows: Array) -> SpellMeans:
+    """The spell with its given flows held, and the others near where they are now."""
+    guide = np.full(layout.run_count, np.nan)
+    if flows.size:
+        guide[spell_graph(layout, spell).basis] = flows
+    given = np.isfinite(spell.flow_m3_s)
+    loose = LOOSE_SHARE * np.maximum(np.abs(np.nan_to_num(guide)), 0.1 * layout.area_m2)
+    return replace(
+        spell,
+        flow_m3_s=np.where(given, spell.flow_m3_s, guide),
+        flow_noise_m3_s=np.where(given, 1e-9, loose),
+        flow_relative_sd=np.zeros(layout.run_count),
+        flow_absolute_sd_m3_s=np.zeros(layout.run_count),
+    )
 
 
 def _even_flows(layout: Layout, basis: Array, wanted: Array) -> Array:
@@ -234,11 +264,11 @@ def _heads_mid_range(layout: Layout, spell: SpellMeans, point: Point) -> Array:
     return heads
 
 
-def _settled(layout: Layout, spell: SpellMeans, point: Point) -> Point:
+def _settled(layout: Layout, spell: SpellMeans, point: Point, applied: Applied | None = None) -> Point:
     """The point at which loops close and surfaces are met."""
     model = Model(layout, [spell], certain=True)
     for _ in range(MOST_STEPS):
-        linear = model.linearise([point])
+        linear = model.linearise([point], applied=applied)
         if not linear.row_count:
             return point
         moved = model.moved(linear, np.zeros(linear.row_count))[0]

@@ -19,7 +19,7 @@ from headledger.diagnosis.estimate import Linear, Model
 from headledger.diagnosis.frame import Frame, all_marks, loss_bends, make_frame
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.means import SpellMeans
-from headledger.diagnosis.planned import perfect, plan_states, planned_noise_pa, scaled, stilled
+from headledger.diagnosis.planned import perfect, plan_states, planned_noise_pa, scaled, stilled, with_loss
 from headledger.diagnosis.result import (
     Alike,
     CauseKind,
@@ -31,7 +31,7 @@ from headledger.diagnosis.result import (
     Verdict,
 )
 from headledger.diagnosis.search import Explanation, Posterior
-from headledger.diagnosis.state import Applied, Point
+from headledger.diagnosis.state import Point
 from headledger.diagnosis.verdicts import judge_gauge
 from headledger.diagnosis.wording import (
     further_sentence,
@@ -304,12 +304,15 @@ def _solved_size(seen: _Seen, mark: Mark, smallest: float) -> float:
 
 
 def _solved_length(seen: _Seen, run: int, size: float) -> float:
-    """How far readings of the sound system lie from a model with a loss more, its flows solved. [-]"""
-    applied, points = Applied(loss_k={run: size}), seen.points
+    """How far the sound system lies from the readings of one with a loss more, its flows solved. [-]"""
+    spells = [
+        with_loss(seen.layout, spell, point, run, size) for spell, point in zip(seen.spells, seen.points, strict=True)
+    ]
+    model, points = Model(seen.layout, spells), seen.points
     for _ in range(SOLVES):
-        linear = seen.model.linearise(points, applied=applied)
-        points = seen.model.moved(linear, np.zeros(linear.row_count))
-    return float(np.linalg.norm(seen.model.linearise(points, applied=applied).white.residual))
+        linear = model.linearise(points)
+        points = model.moved(linear, np.zeros(linear.row_count))
+    return float(np.linalg.norm(model.linearise(points).white.residual))
 
 
 def _gauges(seen: _Seen) -> tuple[GaugeSight, ...]:
