@@ -45,8 +45,8 @@ def drawn(model: Model, linear: Linear, mark: Mark, size: float, rng: np.random.
         levels = spell.level_m.copy()
         levels[place.levels] += moved[count + place.meters.size : count + place.meters.size + place.levels.size]
         start_s = 3600.0 * spell.id
-        times = {"start_s": start_s, "end_s": start_s + 900.0}
-        spells.append(replace(spell, reading_pa=readings, flow_m3_s=flows, level_m=levels, **times))
+        said = replace(spell, reading_pa=readings, flow_m3_s=flows, level_m=levels)
+        spells.append(replace(said, start_s=start_s, end_s=start_s + 900.0))
     return Model(model.layout, spells)
 
 
