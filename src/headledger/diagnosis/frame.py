@@ -23,6 +23,10 @@ LOSS_KINDS = frozenset({CauseKind.BLOCKAGE, CauseKind.LOW_LOSS})
 """Causes that change a run's loss."""
 
 
+SETTLED = 1e-3
+"""Change of every size, as a part of it, at which an explanation's own solution stands. [-]"""
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Frame:
     """Marks of causes on one linearised model.
@@ -177,8 +181,12 @@ def own_frame(model: Model, shared: Frame, chosen: Sequence[int]) -> tuple[Frame
     kinds = {shared.marks[i].kind for i in chosen}
     bends = bool(kinds & {CauseKind.DENSITY_ERROR, CauseKind.FLOW_METER_ERROR})
     rounds = 4 if kinds & LOSS_KINDS and loss_bends(shared.linear) else 2 if bends else 1
+    settled = np.full(len(index), np.nan)
     for _ in range(rounds):
         sizes = np.array([frame.size(index, i).mean for i in index])
+        if np.allclose(sizes, settled, rtol=SETTLED):
+            break
+        settled = sizes
         vectors = np.column_stack([frame.marks[i].vector for i in index])
         points = model.moved(frame.linear, vectors @ (sizes - applied_sizes(frame, index)))
         frame, index = _frame_at(scaled, points, rounds > 2, wanted, [frame.marks[i] for i in index], sizes)

@@ -105,6 +105,7 @@ class Layout:
         self.gravity_m_s2 = float(gravity_m_s2(job.site.latitude_deg, job.site.datum_altitude_m))
         self._graphs: dict[tuple[tuple[bool, ...], tuple[bool, ...]], Graph] = {}
         self._tables: dict[tuple[bytes, bytes], LossTable] = {}
+        self._ties: dict[tuple[tuple[bool, ...], bool], tuple[bool, ...]] = {}
 
     @property
     def gauge_count(self) -> int:
@@ -164,13 +165,16 @@ class Layout:
         Not those that are shut, nor a loss that is free; nor, while liquid moves, a pump without a curve; nor, at rest, a check
         valve, which may hold a higher head on its `end` side.
         """
-        return tuple(
-            opened
-            and run.loss is not LossKind.FREE
-            and not (run.lifts_unknown and not still)
-            and not (run.is_check_valve and still)
-            for run, opened in zip(self.job.runs, is_open, strict=True)
-        )
+        key = (is_open, still)
+        if key not in self._ties:
+            self._ties[key] = tuple(
+                opened
+                and run.loss is not LossKind.FREE
+                and not (run.lifts_unknown and not still)
+                and not (run.is_check_valve and still)
+                for run, opened in zip(self.job.runs, is_open, strict=True)
+            )
+        return self._ties[key]
 
     def graph(self, is_open: tuple[bool, ...], ties: tuple[bool, ...] | None = None) -> Graph:
         """The piping graph in one state of its valves; `ties` as of `ties`, all open runs by default."""

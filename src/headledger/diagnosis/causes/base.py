@@ -93,6 +93,7 @@ class View:
     model: Model
     linear: Linear
     _tolerance: list[Array] = field(default_factory=list)
+    _closing: dict[int, Array] = field(default_factory=dict)
 
     @property
     def layout(self) -> Layout:
@@ -132,16 +133,24 @@ class View:
     def _with_loops_closed(self, vector: Array) -> Array:
         """What a mark does to the gauges once flows have moved so that every loop closes again."""
         closed = vector
-        for group, place in zip(self.linear.groups, self.linear.rows, strict=True):
+        for spell, (group, place) in enumerate(zip(self.linear.groups, self.linear.rows, strict=True)):
             loops = slice(place.start + place.count - place.loops, place.start + place.count)
             if not place.loops or not vector[loops].any():
                 continue
-            within = slice(place.count - place.loops, place.count)
-            moved = -np.linalg.pinv(group.own[within]) @ vector[loops]
+            moved = -self._loop_inverse(spell) @ vector[loops]
             if closed is vector:
                 closed = vector.copy()
             closed[place.start : place.start + place.count] += group.own @ moved
         return closed
+
+    def _loop_inverse(self, spell: int) -> Array:
+        """How a spell's own unknowns close its loops again."""
+        if spell not in self._closing:
+            place = self.linear.rows[spell]
+            self._closing[spell] = np.asarray(
+                np.linalg.pinv(self.linear.groups[spell].own[place.count - place.loops :])
+            )
+        return self._closing[spell]
 
     def gauge_vector(self, gauge: int, values: Array | float) -> Array:
         """A mark on one gauge's rows alone; `values` one for each of its rows, or one for all."""
