@@ -40,6 +40,7 @@ def timeline(readings_pa: Array, flow_m3_s: Array, width_s: float = 2.0) -> Time
         level_m=np.full((blocks, 4), np.nan),
         run_temperature_k=np.full((blocks, 3), np.nan),
         temperature_k=np.full(blocks, np.nan),
+        barometer_pa=np.full(blocks, np.nan),
         speed_ratio=np.full((blocks, 3), np.nan),
         open_fraction=np.full((blocks, 3), np.nan),
     )

@@ -347,18 +347,19 @@ def test_barometer_is_doubted_by_whether_it_was_read(job_folder):
     assert (site.barometer_pa, site.barometer_sd_pa) == (None, 1000.0)  # ±2 kPa
 
 
-@pytest.mark.parametrize("doubt", ["", '\nbarometer_uncertainty = "±0.2 kPa"'])
-def test_barometer_in_a_column_is_doubted_as_the_standard_atmosphere_that_stands_in(job_folder, doubt):
+@pytest.mark.parametrize(
+    ("doubt", "sd_pa"), [("", 100.0), ('\nbarometer_uncertainty = "±0.5 kPa"', 250.0)], ids=["default", "stated"]
+)
+def test_barometer_in_a_column_is_doubted_as_one_that_was_read(job_folder, doubt, sd_pa):
     job_folder.change("job.toml", '"98.9 kPa"', '{ column = "BARO", unit = "hPa" }' + doubt)
     job = job_folder.read()
     assert (job.site.barometer_column, job.site.barometer_pa, job.site.barometer_sd_pa) == (
         "BARO",
         None,
-        1000.0,
-    )  # ±2 kPa
+        sd_pa,
+    )
     assert job.site.barometer_unit is not None
     assert job.site.barometer_unit.to_si(989.0) == pytest.approx(98_900.0)
-    assert any(remark.startswith("barometer: its log column is not used yet") for remark in unused_yet(job))
 
 
 def test_ambient_is_none_unless_stated(job_folder):

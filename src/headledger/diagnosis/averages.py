@@ -222,6 +222,7 @@ def _means(
         relative[run], absolute[run] = stated.doubt.relative_fraction, stated.doubt.absolute
     level, level_sd = _surfaces(layout, timeline, cut)
     temperature = float(_mean(timeline.temperature_k[cut][:, None])[0])
+    barometer = float(_mean(timeline.barometer_pa[cut][:, None])[0])
     return SpellMeans(
         id=number,
         kind=spell.kind,
@@ -241,6 +242,7 @@ def _means(
         is_open=_states(layout, timeline, cut),
         is_unsure=_unsure(layout, timeline, cut),
         run_temperature_k=_run_temperatures(layout, timeline, cut),
+        barometer_pa=barometer if np.isfinite(barometer) else None,
     )
 
 

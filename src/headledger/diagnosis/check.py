@@ -13,7 +13,7 @@ from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import list_findings
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.next_checks import Answer, answered, next_checks
-from headledger.diagnosis.readings import read_timeline
+from headledger.diagnosis.readings import read_timeline, with_logged_barometer
 from headledger.diagnosis.report import cause_found, gauge_found, spells_found
 from headledger.diagnosis.result import CheckResult, InputFile, Trend
 from headledger.diagnosis.search import search
@@ -100,6 +100,7 @@ def check_job(
     """
     tell = on_progress or (lambda _what, _share: None)
     found_on_site = [parse_answer(text, job) for text in answers]
+    job = with_logged_barometer(job, digests)
     layout = Layout(job)
     timeline = read_timeline(layout, digests)
     tell("finding spells", 0.45)

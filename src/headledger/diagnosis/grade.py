@@ -204,7 +204,9 @@ def tap_head_m(model: Model, state: State, gauge: int, reading_pa: float) -> flo
     layout = model.layout
     run = int(layout.tap_run[gauge])
     heavier = 0.0 if run < 0 else float(state.run_density_kg_m3[run]) - state.density_kg_m3
+    weather_pa = float(state.weather_pa[gauge])
     leg_pa = heavier * layout.gravity_m_s2 * layout.process_leg_m[gauge]
     return float(
-        (reading_pa - layout.taps.constant_pa[gauge] - leg_pa) / state.head_weight_pa_m + layout.taps.column_m[gauge]
+        (reading_pa - layout.taps.constant_pa[gauge] - leg_pa - weather_pa) / state.head_weight_pa_m
+        + layout.taps.column_m[gauge]
     )

@@ -39,6 +39,8 @@ class SpellMeans:
     is_open : tuple of bool, length runs
     is_unsure : tuple of bool
         Runs of whose valve it is not known whether it is open: liquid may pass, and by what loss is not known; none by default.
+    barometer_pa : float or None
+        At the datum in this spell, where it is logged. [Pa absolute]
     run_temperature_k : ndarray, shape (runs,), optional
         Of runs whose liquid has a temperature of its own, nan elsewhere. [K]
     """
@@ -61,6 +63,7 @@ class SpellMeans:
     is_open: tuple[bool, ...]
     is_unsure: tuple[bool, ...] = ()
     run_temperature_k: Array | None = None
+    barometer_pa: float | None = None
 
     @property
     def is_still(self) -> bool:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,6 +15,7 @@ from headledger.plant.gauges import Gauge, Signal
 from headledger.plant.job import Job, LiquidSpec
 from headledger.plant.runs import Run, RunState
 from headledger.quantities import Dimension, PressureKind, Unit, parse_unit
+from headledger.readers.job_settings import BAROMETER_UNSTATED_PA, COVERAGE
 
 Array = NDArray[np.float64]
 
@@ -41,6 +42,8 @@ class Timeline:
         Of surfaces with a level column, nan elsewhere. [m]
     temperature_k : ndarray, shape (blocks,)
         nan where the job names no column. [K]
+    barometer_pa : ndarray, shape (blocks,)
+        At the datum; nan where the job names no column. [Pa absolute]
     run_temperature_k : ndarray, shape (blocks, runs)
         nan where a run names no column. [K]
     speed_ratio, open_fraction : ndarray, shape (blocks, runs)
@@ -62,6 +65,7 @@ class Timeline:
     flow_variance: Array
     level_m: Array
     temperature_k: Array
+    barometer_pa: Array
     run_temperature_k: Array
     speed_ratio: Array
     open_fraction: Array
@@ -173,6 +177,7 @@ def read_timeline(layout: Layout, digests: Sequence[Digest]) -> Timeline:
         temperature_k=_temperature(
             columns, job.liquid, job.liquid.temperature_column, job.liquid.temperature_unit, "liquid", remarks
         ),
+        barometer_pa=_barometer(columns, job),
         run_temperature_k=np.column_stack(
             [
                 _temperature(columns, job.liquid, r.temperature_column, r.temperature_unit, r.name, remarks)
@@ -321,6 +326,39 @@ def _levels(columns: _Columns, job: Job, remarks: list[str]) -> Array:
             unit = _logged_unit(column, station.level_unit, f"level of {station.name}", remarks, None)
             levels[:, index] = column.mean * unit.factor + unit.offset
     return levels
+
+
+def with_logged_barometer(job: Job, digests: Sequence[Digest]) -> Job:
+    """The job with the barometer that its log column has on average; doubted as nobody's word where no log has the column.
+
+    Parameters
+    ----------
+    job : Job
+    digests : sequence of Digest
+
+    Returns
+    -------
+    Job
+    """
+    if job.site.barometer_column is None:
+        return job
+    logged_pa = _barometer(_Columns(digests), job)
+    if np.isfinite(logged_pa).any():
+        mean_pa = float(np.nanmean(logged_pa))
+        said = f"barometer: logged as {job.site.barometer_column}, {mean_pa / 1000.0:.2f} kPa on average."
+        return replace(job, site=replace(job.site, barometer_pa=mean_pa), remarks=(*job.remarks, said))
+    said = f"barometer: no log has a column {job.site.barometer_column!r}; the standard atmosphere stands in."
+    doubt_pa = max(job.site.barometer_sd_pa, BAROMETER_UNSTATED_PA / COVERAGE)
+    return replace(job, site=replace(job.site, barometer_sd_pa=doubt_pa), remarks=(*job.remarks, said))
+
+
+def _barometer(columns: _Columns, job: Job) -> Array:
+    """Logged barometer, block by block. [Pa absolute]"""
+    column, own = columns.get(job.site.barometer_column), job.site.barometer_unit
+    if column is None or own is None:
+        return np.full(columns.index.size, np.nan)
+    unit = _logged_unit(column, own, "barometer", [], PressureKind.ABSOLUTE)
+    return np.asarray(column.mean * unit.factor + unit.offset)
 
 
 def _temperature(

@@ -116,6 +116,8 @@ class State:
         [kg/m³]
     head_weight_pa_m : float
         ρ g, what a metre of head weighs. [Pa/m]
+    weather_pa : ndarray, shape (gauges,)
+        What the barometer of this spell, against that of the visit, adds to each reading. [Pa]
     """
 
     graph: Graph
@@ -132,6 +134,7 @@ class State:
     density_kg_m3: float
     run_density_kg_m3: Array
     head_weight_pa_m: float
+    weather_pa: Array
 
     def reading_from_flow(self, layout: Layout) -> Array:
         """Derivative of the readings with the independent flows, shape (gauges, independent). [Pa s/m³]"""
@@ -252,6 +255,8 @@ def evaluate(
     readings = layout.taps.readings_pa(head, velocity, density_kg_m3=density, gravity_m_s2=layout.gravity_m_s2)
     tapped = layout.tap_run >= 0
     own_leg = np.where(tapped, run_density[layout.tap_run] - density, 0.0) if layout.run_count else 0.0
+    rise_pa = 0.0 if spell.barometer_pa is None else spell.barometer_pa - layout.barometer_pa
+    weather = rise_pa * layout.follows_barometer
     return State(
         graph=graph,
         point=point,
@@ -263,8 +268,9 @@ def evaluate(
         added_m=added,
         column_m=column,
         head_m=head,
-        reading_pa=readings + own_leg * layout.gravity_m_s2 * layout.process_leg_m,
+        reading_pa=readings + own_leg * layout.gravity_m_s2 * layout.process_leg_m + weather,
         density_kg_m3=density,
         run_density_kg_m3=run_density,
         head_weight_pa_m=density * layout.gravity_m_s2,
+        weather_pa=weather,
     )

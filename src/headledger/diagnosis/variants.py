@@ -285,7 +285,7 @@ def said_pressure_pa(linear: Linear, index: int) -> Array:
             continue
         at = layout.station_index[noun.station]
         head = (
-            spell.reading_pa[gauge] - layout.taps.constant_pa[gauge]
+            spell.reading_pa[gauge] - layout.taps.constant_pa[gauge] - state.weather_pa[gauge]
         ) / state.head_weight_pa_m + layout.taps.column_m[gauge]
         pressure = layout.barometer_pa + state.head_weight_pa_m * (head - layout.station_elevation_m[at])
         said[at] = min(said[at], float(pressure))

@@ -92,10 +92,6 @@ def read_job(folder: Path | str, *, logs_needed: bool = True) -> Job:
 def unused_yet(job: Job) -> tuple[str, ...]:
     """What is read but has no part in the judgement yet, a sentence each."""
     remarks = []
-    if job.site.barometer_column:
-        remarks.append(
-            "barometer: its log column is not used yet; the standard atmosphere stands in, with its own doubt."
-        )
     if any(run.rating_pa is not None for run in job.runs):
         remarks.append("runs: ratings are not used yet; they limit a pressure hold.")
     if job.hold:

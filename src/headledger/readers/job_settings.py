@@ -312,10 +312,7 @@ def read_site(section: Section) -> Site:
     column, barometer = section.measured("barometer", Dimension.PRESSURE, "98.9 kPa", PressureKind.ABSOLUTE)
     doubt = section.quantity("barometer_uncertainty", Dimension.PRESSURE, "±0.2 kPa", PressureKind.DIFFERENCE)
     if doubt is None:
-        doubt = BAROMETER_UNSTATED_PA if barometer is None else BAROMETER_STATED_PA
-    elif column:
-        # The column has no part in the judgement: what is doubted is the standard atmosphere that stands in for it.
-        doubt = max(abs(doubt), BAROMETER_UNSTATED_PA)
+        doubt = BAROMETER_UNSTATED_PA if barometer is None and not column else BAROMETER_STATED_PA
     altitude = section.quantity("datum_altitude", Dimension.LENGTH, "210 m")
     latitude = section.quantity("latitude", Dimension.ANGLE, "47 deg")
     if latitude is not None and abs(latitude) > 90.0:
