@@ -4,14 +4,18 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
+from scipy.special import ndtr
 
+from headledger.diagnosis.answers import Answer, answered
 from headledger.diagnosis.findings import list_findings
-from headledger.diagnosis.next_checks import Answer, answered, next_checks
+from headledger.diagnosis.more_spells import Foreseen, joint_bits
+from headledger.diagnosis.next_checks import next_checks
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.diagnosis.search import search
 from headledger.diagnosis.site_actions import ACTIONS, Action, ActionKind, parse_answer
 from headledger.errors import JobError
 
+from .made_systems import gauge, job, loss_m, model, run, spell, station
 from .worked_job import REFERENCE, worked_layout, worked_model
 
 HIGH = "PT-C reads 14 kPa high"
@@ -114,3 +118,41 @@ def test_information_never_exceeds_that_of_the_explanations():
         entropy = float(-(share * np.log2(share)).sum())
         for check in next_checks(model, posterior, list_findings(posterior)):
             assert -1e-9 <= check.gain_bits <= entropy + 1e-6
+
+
+def normal(mean: float) -> Foreseen:
+    return Foreseen(mean=np.array([mean]), covariance=np.eye(1))
+
+
+@pytest.mark.parametrize(("apart", "bits"), [(0.0, 0.0), (2.0, 0.486), (12.0, 1.0)])
+def test_bits_of_two_normal_readings_are_those_of_two_signals_in_noise(apart: float, bits: float):
+    """Two equally likely means ±1 in unit noise carry 0.486 bit (capacity of a binary signal in Gaussian noise at Es/N0 = −3 dB;
+    Proakis, Digital Communications, 4th ed., fig. 7.1-4, from memory); apart by nothing 0, by far 1. 200 draws leave about 0.05.
+    """
+    found, overlap = joint_bits([(0.5, [(1.0, normal(0.0))]), (0.5, [(1.0, normal(apart))])])
+    assert found == pytest.approx(bits, abs=0.06)
+    assert overlap[0, 0] == pytest.approx(1.0)
+    # two unit normals overlap by 2 Φ(−d/2)
+    assert overlap[0, 1] == pytest.approx(float(2.0 * ndtr(-apart / 2.0)), abs=0.06)
+
+
+def test_shift_or_blockage_seen_at_one_flow_calls_for_another_state():
+    """At one flow the last gauge of a line reads 30 kPa low: its own shift, or a loss before it. Only another flow tells."""
+    stations = [station("A", 0.0, is_open=True), station("B", 0.0), station("C", 0.0, is_open=True)]
+    runs = [run("R1", "A", "B", flow_column="FT"), run("R2", "B", "C")]
+    described = job(stations, runs, [gauge("PA", "A", "R1"), gauge("PB", "B", "R1"), gauge("PC", "C", "R2")])
+    loss = loss_m(0.01)
+    heads = {"A": 40.0, "B": 40.0 - loss, "C": 40.0 - 2.0 * loss}
+    judged = model(described, [spell(described, 1, heads, {"R1": 0.01, "R2": 0.01}, shift_pa={"PC": -30_000.0})])
+    posterior = search(judged)
+    checks = next_checks(judged, posterior, list_findings(posterior))
+    more = next(check for check in checks if check.action in ("still-spell", "other-flow"))
+    assert more.gain_bits > 0.3
+    assert any("blockage" in pair for pair in more.separates)
+    assert more.says.startswith("Log a spell at")
+    assert "whoever runs the system" in more.caution
+
+
+def test_spell_is_logged_and_not_answered():
+    with pytest.raises(JobError, match="is no answer but more of the log"):
+        parse_answer("other-flow R1 = yes", worked_layout().job)

@@ -7,12 +7,13 @@ from pathlib import Path
 
 import numpy as np
 
+from headledger.diagnosis.answers import Answer, answered
 from headledger.diagnosis.averages import spell_pieces
 from headledger.diagnosis.circulation import circulations
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import list_findings
 from headledger.diagnosis.layout import Layout
-from headledger.diagnosis.next_checks import Answer, answered, next_checks
+from headledger.diagnosis.next_checks import next_checks
 from headledger.diagnosis.readings import read_timeline, with_logged_barometer
 from headledger.diagnosis.report import cause_found, gauge_found, spells_found
 from headledger.diagnosis.result import CheckResult, InputFile, Trend

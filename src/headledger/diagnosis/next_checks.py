@@ -8,7 +8,6 @@ from __future__ import annotations
 
 from collections import defaultdict
 from collections.abc import Sequence
-from dataclasses import dataclass
 from itertools import combinations
 
 import numpy as np
@@ -16,10 +15,11 @@ from numpy.typing import NDArray
 
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import Finding
+from headledger.diagnosis.more_spells import foresee, further_spell, joint_bits
 from headledger.diagnosis.result import CauseKind, NextCheck, Place
 from headledger.diagnosis.search import Explanation, Posterior
 from headledger.diagnosis.site_actions import ACTIONS, Action, ActionKind
-from headledger.diagnosis.wording import action_sentence
+from headledger.diagnosis.wording import action_sentence, spell_sentence
 
 Array = NDArray[np.float64]
 
@@ -27,6 +27,12 @@ LEAST_BITS = 0.05
 """An action that settles less is not worth naming. [bit]"""
 
 MOST_CHECKS, MOST_PAIRS = 6, 2
+
+FLOW_FACTORS = (0.5, 1.5)
+"""Further flows that are thought of, as parts of the greatest. [-]"""
+
+MOST_FORESEEN = 12
+"""So many explanations, the likeliest, are asked what a further spell would read."""
 
 WORTH_CHECKING = 0.02
 """Findings less probable than this call for no action. [-]"""
@@ -150,6 +156,7 @@ def next_checks(model: Model, posterior: Posterior, findings: Sequence[Finding])
                     caution=facts.caution,
                 )
             )
+    found += _spells_worth_logging(model, posterior, counted)
     order = {kind.value: facts.risk for kind, facts in ACTIONS.items()}
     found.sort(key=lambda check: (-round(check.gain_bits / check.minutes, 3), order[check.action], check.minutes))
     return tuple(found[:MOST_CHECKS])
@@ -167,16 +174,63 @@ def _counted(posterior: Posterior) -> list[tuple[float, Explanation]]:
     return [(probability / weight, explanation) for probability, explanation in kept]
 
 
+def _classes(counted: Sequence[tuple[float, Explanation]]) -> list[list[tuple[float, Explanation]]]:
+    """Explanations that call for the same work, together."""
+    classes: dict[frozenset[tuple[str, Place]], list[tuple[float, Explanation]]] = defaultdict(list)
+    for probability, explanation in counted:
+        classes[frozenset(work_of(kind, place) for kind, place in explanation.keys)].append((probability, explanation))
+    return list(classes.values())
+
+
+def _spells_worth_logging(
+    model: Model, posterior: Posterior, counted: Sequence[tuple[float, Explanation]]
+) -> list[NextCheck]:
+    """Further spells that would settle something: at rest where none was, at less and at more flow."""
+    likely = sorted(counted, key=lambda pair: -pair[0])[:MOST_FORESEEN]
+    classes = _classes(likely)
+    if len(classes) < 2:
+        return []
+    at_rest = any(spell.is_still for spell in model.spells)
+    found = []
+    for factor in FLOW_FACTORS if at_rest else (0.0, *FLOW_FACTORS):
+        more = further_spell(model, posterior, factor)
+        if more is None:
+            continue
+        foreseen = dict(zip((id(e) for _, e in likely), foresee(posterior, [e for _, e in likely], *more), strict=True))
+        whole = sum(p for p, _ in likely)
+        weighed = [
+            (
+                sum(p for p, _ in members) / whole,
+                [(p / sum(q for q, _ in members), foreseen[id(e)]) for p, e in members],
+            )
+            for members in classes
+        ]
+        bits, overlap = joint_bits(weighed)
+        if bits >= LEAST_BITS:
+            names = [_name(members[0][1], None) for members in classes]
+            pairs = _apart(names, np.array([weight for weight, _ in weighed]), overlap)
+            kind = ActionKind.OTHER_FLOW if factor else ActionKind.STILL_SPELL
+            found.append(
+                NextCheck(
+                    action=kind.value,
+                    place=Place(),
+                    gain_bits=bits,
+                    minutes=ACTIONS[kind].minutes,
+                    separates=pairs,
+                    says=spell_sentence(factor, pairs),
+                    caution=ACTIONS[kind].caution,
+                )
+            )
+    return sorted(found, key=lambda check: -check.gain_bits)[:1]
+
+
 def _value(
     model: Model, counted: Sequence[tuple[float, Explanation]], action: Action
 ) -> tuple[float, tuple[tuple[str, str], ...]]:
     """Bits between the work to be done and the outcome, and which kinds of cause the outcome tells apart."""
-    classes: dict[frozenset[tuple[str, Place]], list[tuple[float, Explanation]]] = defaultdict(list)
-    for probability, explanation in counted:
-        classes[frozenset(work_of(kind, place) for kind, place in explanation.keys)].append((probability, explanation))
     weights, densities, names = [], [], []
     grid = _outcomes(model, counted, action)
-    for members in classes.values():
+    for members in _classes(counted):
         share = sum(probability for probability, _ in members)
         weights.append(share)
         densities.append(np.sum([p * outcome_density(model, e, action, grid) for p, e in members], axis=0) / share)
@@ -196,10 +250,12 @@ def _log2_ratio(density: Array, mixed: Array) -> Array:
         return np.where(density > 1e-300, np.log2(density / np.maximum(mixed, 1e-300)), 0.0)
 
 
-def _name(explanation: Explanation, action: Action) -> str:
+def _name(explanation: Explanation, action: Action | None) -> str:
     """The kind of cause in an explanation that an action looks at, or that nothing is wrong there."""
     here = [
-        kind for kind, place in explanation.keys if action.place in (Place(gauge=place.gauge), Place(run=place.run))
+        kind
+        for kind, place in explanation.keys
+        if action is not None and action.place in (Place(gauge=place.gauge), Place(run=place.run))
     ]
     elsewhere = sorted(explanation.keys, key=lambda key: key[0].value)
     return here[0].value if here else elsewhere[0][0].value if elsewhere else "none"
@@ -207,11 +263,16 @@ def _name(explanation: Explanation, action: Action) -> str:
 
 def _told_apart(names: Sequence[str], weights: Array, shares: Array) -> tuple[tuple[str, str], ...]:
     """Pairs of kinds whose outcomes overlap by less than half, the weightiest first."""
+    overlap = np.minimum(shares[:, None, :], shares[None, :, :]).sum(axis=2)
+    return _apart(names, weights, overlap)
+
+
+def _apart(names: Sequence[str], weights: Array, overlap: Array) -> tuple[tuple[str, str], ...]:
+    """The same from how far the outcomes of every two classes overlap, shape (classes, classes)."""
     order = [int(k) for k in np.argsort(-weights)[:5] if weights[k] >= WORTH_CHECKING]
     pairs: dict[frozenset[str], tuple[str, str]] = {}
     for first, second in combinations(order, 2):
-        overlap = float(np.minimum(shares[first], shares[second]).sum())
-        if overlap < 0.5 and names[first] != names[second]:
+        if overlap[first, second] < 0.5 and names[first] != names[second]:
             pairs.setdefault(frozenset((names[first], names[second])), (names[first], names[second]))
     return tuple(pairs.values())[:MOST_PAIRS]
 
@@ -309,44 +370,3 @@ def _shows(kind: CauseKind, action: Action) -> bool:
     if action.kind is ActionKind.ZERO_CHECK:
         return kind in (CauseKind.ZERO_SHIFT, CauseKind.DRIFT, CauseKind.STEP, CauseKind.WRONG_REFERENCE)
     return kind in _AT_THE_INSTRUMENT
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Answer:
-    """What an action found on site.
-
-    Parameters
-    ----------
-    action : Action
-    outcome : float
-        1 or 0 for yes or no; else in SI.
-    """
-
-    action: Action
-    outcome: float
-
-
-def answered(model: Model, posterior: Posterior, answers: Sequence[Answer]) -> Posterior:
-    """The posterior once the results of actions are known.
-
-    Parameters
-    ----------
-    model : Model
-    posterior : Posterior
-    answers : sequence of Answer
-
-    Returns
-    -------
-    Posterior
-        The same explanations, weighed anew.
-    """
-    if not answers:
-        return posterior
-    moved = []
-    for explanation in posterior.explanations:
-        likelihood = 0.0
-        for answer in answers:
-            density = outcome_density(model, explanation, answer.action, np.array([answer.outcome]))
-            likelihood += float(np.log(np.maximum(density[0], 1e-300)))
-        moved.append(explanation.weighed(explanation.log_weight + likelihood))
-    return posterior.with_explanations(moved)

@@ -23,6 +23,8 @@ class ActionKind(StrEnum):
     STROKE_VALVE = "stroke-valve"
     CHECK_METER = "check-meter"
     CHECK_PUMP = "check-pump"
+    STILL_SPELL = "still-spell"
+    OTHER_FLOW = "other-flow"
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -56,7 +58,14 @@ class ActionFacts:
 
 _ISOLATE = "Isolate, vent and lock out by the site's own rules first; a reading of zero does not prove that a line is without pressure."
 
+LOGGED = frozenset({ActionKind.STILL_SPELL, ActionKind.OTHER_FLOW})
+"""Actions whose result is more of the log, and no answer."""
+
+_OPERATORS = "Flow is changed, or stopped, by whoever runs the system, and slowly."
+
 ACTIONS: dict[ActionKind, ActionFacts] = {
+    ActionKind.STILL_SPELL: ActionFacts(minutes=20.0, risk=0, is_look=False, caution=_OPERATORS),
+    ActionKind.OTHER_FLOW: ActionFacts(minutes=20.0, risk=0, is_look=False, caution=_OPERATORS),
     ActionKind.SURVEY: ActionFacts(
         minutes=15.0, risk=0, is_look=False, caution="Nothing is opened; mind heights and what stands in the way."
     ),
@@ -123,6 +132,10 @@ def parse_answer(text: str, job: Job) -> tuple[Action, float]:
         near = nearest(match["action"], names)
         raise JobError([_problem(text, "names no action", near or ", ".join(names))])
     kind = ActionKind(match["action"])
+    if kind in LOGGED:
+        raise JobError(
+            [_problem(text, "is no answer but more of the log", "the log with that spell in it, checked again")]
+        )
     return Action(kind=kind, place=_place(text, match["place"], kind, job)), _outcome(text, match["value"], kind)
 
 

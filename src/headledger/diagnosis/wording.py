@@ -103,9 +103,19 @@ def action_sentence(kind: str, place: Place, separates: Sequence[tuple[str, str]
         "check-meter": "Compare the flow meter of {at} with a second measurement",
         "check-pump": "Look at the pump at {at}: rotation, speed, suction",
     }[kind]
+    return f"{words.format(at=place_words(place))}{_tells(separates)}."
+
+
+def spell_sentence(flow_factor: float, separates: Sequence[tuple[str, str]]) -> str:
+    """A further spell in words, and what it would tell apart."""
+    what = f"at {flow_factor:g} times the greatest flow so far" if flow_factor else "at rest"
+    return f"Log a spell {what}{_tells(separates)}."
+
+
+def _tells(separates: Sequence[tuple[str, str]]) -> str:
+    """What is told apart, after a colon."""
     pairs = [f"{_plain_kind(first)} from {_plain_kind(second)}" for first, second in separates]
-    told = f": it tells {', and '.join(pairs)}" if pairs else ""
-    return f"{words.format(at=place_words(place))}{told}."
+    return f": it tells {', and '.join(pairs)}" if pairs else ""
 
 
 def _plain_kind(name: str) -> str:
