@@ -12,6 +12,7 @@ from headledger.diagnosis.averages import spell_pieces
 from headledger.diagnosis.circulation import circulations
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import list_findings
+from headledger.diagnosis.fit import fit_of
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.next_checks import next_checks
 from headledger.diagnosis.readings import read_timeline, with_logged_barometer
@@ -25,6 +26,7 @@ from headledger.diagnosis.trait_findings import trait_findings
 from headledger.diagnosis.traits import find_traits, undone
 from headledger.diagnosis.vapour import vapour_findings
 from headledger.diagnosis.verdicts import judge_gauge
+from headledger.diagnosis.wording import unexplained_sentence
 from headledger.errors import JobError, NothingToCheckError, Problem
 from headledger.plant.digest import Digest
 from headledger.plant.job import Job
@@ -130,13 +132,14 @@ def check_job(
         [*list_findings(posterior), *seen, *vapour_findings(model, posterior)],
         key=lambda finding: -round(finding.probability, 2),
     )
+    fit = fit_of(posterior)
     tell("judging gauges", 0.85)
     judged = [judge_gauge(model, posterior, gauge) for gauge in range(layout.gauge_count)]
     return CheckResult(
         job=job,
         inputs=_inputs(job, digests),
         spells=spells_found(model, posterior, findings),
-        clean_probability=posterior.clean_probability * unseen,
+        clean_probability=posterior.clean_probability * unseen * (1.0 - fit.unknown_probability),
         gauges=tuple(gauge_found(model, posterior, findings, gauge, one) for gauge, one in enumerate(judged)),
         causes=tuple(cause_found(model, finding) for finding in findings),
         rejects=tuple(reject for digest in digests for reject in digest.rejects),
@@ -144,6 +147,7 @@ def check_job(
         remarks=(*job.remarks, *timeline.remarks, *unread_spells(job, stretches), *circulations(model)),
         next_checks=next_checks(model, posterior, findings),
         answers=tuple(answers),
+        unexplained=unexplained_sentence(fit.misfit, fit.rows) if fit.is_poor else "",
         sight=sight_of(model, [state.point for state in posterior.frame.linear.states]),
         trend=Trend(start_s=timeline.start_s, width_s=timeline.width_s, reading_pa=timeline.reading_pa),
     )

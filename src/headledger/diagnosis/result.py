@@ -496,6 +496,8 @@ class CheckResult:
         Results of actions that were taken into account, as they were given.
     sight : Sight or None
         What the readings at hand could have shown; None where it was not asked for.
+    unexplained : str
+        That no explanation weighed explains the readings, in words; empty where one does.
     """
 
     job: Job
@@ -511,3 +513,4 @@ class CheckResult:
     next_checks: tuple[NextCheck, ...] = ()
     answers: tuple[str, ...] = ()
     sight: Sight | None = None
+    unexplained: str = ""

@@ -271,6 +271,14 @@ def verdict_sentence(gauge: Gauge, judged: Judged, causes: Sequence[Finding], gi
     return f"{gauge.tag}: {words}{leans}{because}: {numbers}."
 
 
+def unexplained_sentence(misfit: float, rows: int) -> str:
+    """That even the likeliest explanation leaves more than chance would."""
+    return (
+        f"Even the likeliest explanation leaves the readings {math.sqrt(misfit / rows):.1f} times further off than their doubts allow: "
+        "something is there that is not among the causes weighed, or a doubt is stated too small."
+    )
+
+
 def state_words(job: Job, kind: SpellKind, flows: Sequence[tuple[str, float]]) -> str:
     """A flow state in words; flows in m³/s, by run."""
     if kind is SpellKind.STILL:

@@ -52,7 +52,8 @@ def headline(result: CheckResult) -> tuple[Answer, ...]:
         answers.append(Answer(question="Where?", lines=_where(result, leaders)))
     if trouble and leaders:
         answers.append(Answer(question="Gauge or pipe?", lines=_gauge_or_pipe(leaders)))
-    answers.append(Answer(question="How sure?", lines=(_how_sure(result, leaders),)))
+    sure = (_how_sure(result, leaders), *((result.unexplained,) if result.unexplained else ()))
+    answers.append(Answer(question="How sure?", lines=sure))
     answers.append(Answer(question="What next?", lines=_what_next(result, leaders)))
     return tuple(answers)
 

@@ -49,6 +49,7 @@ def result_to_json(result: CheckResult) -> dict[str, Any]:
         "rejects": [_reject(reject) for reject in result.rejects],
         "remarks": list(result.remarks),
         "answers": list(result.answers),
+        "unexplained": result.unexplained or None,
         "sight": None if result.sight is None else sight_to_json(result.job, result.sight),
     }
 
