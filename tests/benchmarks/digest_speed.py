@@ -26,7 +26,7 @@ from pathlib import Path
 from headledger.plant.job import LogSettings
 from headledger.readers.logs import read_log
 if __name__ == "__main__":
-    read_log(Path({path!r}), name="log.csv", settings=LogSettings(), timezone="UTC")
+    read_log(Path({path!r}), name="log.csv", settings=LogSettings(), timezone="UTC", processes={processes})
 """
 MEASURED = """
 import resource, time
@@ -49,7 +49,8 @@ def make_log(path: Path, rows: int, columns: int) -> None:
             block = stamps[start : start + 20_000]
             values = 3.0 + 0.01 * np.arange(columns - 1) + 0.02 * rng.standard_normal((block.size, columns - 1))
             text = np.char.mod("%.6f", values)
-            file.writelines(f"{stamp}," + ",".join(row) + "\n" for stamp, row in zip(block.astype(str), text, strict=True))
+            lines = zip(block.astype(str), text, strict=True)
+            file.writelines(f"{stamp}," + ",".join(row) + "\n" for stamp, row in lines)
     part.replace(path)
 
 
@@ -65,7 +66,7 @@ def measure(body: str) -> tuple[float, float]:
     return float(seconds), float(memory)
 
 
-def main(rows: int = 500_000, columns: int = 43, folder: str = "") -> None:
+def main(rows: int, columns: int, *, folder: str = "") -> None:
     """Print times as ratios to chunked pandas, and memory."""
     path = Path(folder or tempfile.gettempdir()) / f"headledger-log-{rows}x{columns}.csv"
     if not path.exists():
@@ -76,9 +77,11 @@ def main(rows: int = 500_000, columns: int = 43, folder: str = "") -> None:
     print(f"chunked pandas            {beside:6.2f} s  1.00      {memory:4.0f} MB")
     for processes in (1, 2):
         seconds, memory = measure(DIGEST.format(path=str(path), processes=processes))
-        print(f"digest, {processes} process{'es' if processes > 1 else '  '}       {seconds:6.2f} s  {seconds / beside:4.2f}      {memory:4.0f} MB a process")
+        ratio = seconds / beside
+        print(f"digest, processes: {processes}      {seconds:6.2f} s  {ratio:4.2f}      {memory:4.0f} MB a process")
 
 
 if __name__ == "__main__":
     words = sys.argv[1:]
-    main(*(int(word) for word in words[:2]), *words[2:3])
+    numbers = [int(word) for word in words[:2]]
+    main(*(numbers + [500_000, 43][len(numbers) :]), folder=" ".join(words[2:]))

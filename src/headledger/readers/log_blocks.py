@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from headledger.plant.digest import Cells, joined, reduced
+from headledger.readers.log_fast import cells_of_rows
 from headledger.readers.log_files import text_of
 from headledger.readers.log_shape import EMPTY_WORDS, LogShape, split_line
 
@@ -273,10 +274,18 @@ def cells_of_column(column: int, index: Ints, values: Array) -> Cells:
 
 
 class Gathering:
-    """Cells of a whole log in bounded memory: the width doubles whenever more than `max_blocks` blocks hold a row."""
+    """Cells of a whole log in bounded memory: the width doubles whenever more than `max_blocks` blocks hold a row.
 
-    def __init__(self, max_blocks: int) -> None:
+    Parameters
+    ----------
+    max_blocks : int
+    rows_expected : int
+        A guess, so that the first blocks are not narrower than they can stay; 0 where nothing is known.
+    """
+
+    def __init__(self, max_blocks: int, rows_expected: int = 0) -> None:
         self.max_blocks = max_blocks
+        self._first_doublings = max(int(np.log2(max(rows_expected, 1) / max_blocks)), 0)
         self.width_s = 0.0
         self.index: Ints = np.zeros(0, dtype=np.int64)
         self.rows: Ints = np.zeros(0, dtype=np.int64)
@@ -285,7 +294,7 @@ class Gathering:
         self._most_held = 500_000
 
     def add(self, row_s: Array, columns: Sequence[tuple[int, Array, Array]], interval_s: float) -> None:
-        """Take some rows and their values into account.
+        """Take some rows and their values into account, column by column.
 
         Parameters
         ----------
@@ -296,22 +305,58 @@ class Gathering:
         interval_s : float
             Between rows; decides the first width. [s]
         """
-        if not self.width_s:
-            # A hair wider, for stamps that carry the rounding of a float.
-            self.width_s = float(2.0 ** np.floor(np.log2(interval_s * (1.0 + 1e-6))))
-        at = np.floor(row_s / self.width_s).astype(np.int64)
-        at = at >> self._fit(at)
-        self.index, inverse = np.unique(np.concatenate([self.index, at]), return_inverse=True)
-        weights = np.concatenate([self.rows, np.ones(at.size, dtype=np.int64)])
-        self.rows = np.bincount(inverse, weights, self.index.size).astype(np.int64)
+        at = self._blocks_of(row_s, interval_s)
         cells = [
             cells_of_column(column, at if time_s is row_s else np.floor(time_s / self.width_s).astype(np.int64), values)
             for column, time_s, values in columns
             if values.size
         ]
         if cells:
-            self._parts.append(joined(cells))
-            self._held += self._parts[-1].index.size
+            self._hold(joined(cells))
+
+    def add_whole(self, row_s: Array, values: Array, interval_s: float) -> None:
+        """Take rows into account of which no value is missing, `values` of shape (columns, rows)."""
+        self._hold(cells_of_rows(self._blocks_of(row_s, interval_s), values))
+
+    def _blocks_of(self, row_s: Array, interval_s: float) -> Ints:
+        """Block of each row, wide enough that all blocks stay few; the rows are counted."""
+        if not self.width_s:
+            # A hair wider, for stamps that carry the rounding of a float.
+            self.width_s = float(2.0 ** (np.floor(np.log2(interval_s * (1.0 + 1e-6))) + self._first_doublings))
+        at = np.floor(row_s / self.width_s).astype(np.int64)
+        at = at >> self._fit(at)
+        begins = np.flatnonzero(np.diff(at, prepend=at[:1] - 1))
+        index, rows = at[begins], np.diff(begins, append=at.size)
+        if self.index.size and index.size and index[0] < self.index[-1]:
+            merged, inverse = np.unique(np.concatenate([self.index, index]), return_inverse=True)
+            self.rows = np.bincount(inverse, np.concatenate([self.rows, rows]), merged.size).astype(np.int64)
+            self.index = merged
+            return at
+        again = int(bool(self.index.size and index.size and index[0] == self.index[-1]))
+        if again:
+            self.rows = np.append(self.rows[:-1], self.rows[-1] + rows[0])
+        self.index, self.rows = np.append(self.index, index[again:]), np.append(self.rows, rows[again:])
+        return at
+
+    def absorb(self, later: Gathering) -> None:
+        """Take blocks into account that were gathered of later rows."""
+        if not later.index.size:
+            return
+        self.width_s = self.width_s or later.width_s
+        wide = max(self.width_s, later.width_s)
+        theirs = later.index >> round(np.log2(wide / later.width_s))
+        cells = reduced(later.cells(), round(wide / later.width_s))
+        self._widen(round(np.log2(wide / self.width_s)))
+        doublings = self._fit(theirs)
+        theirs, cells = theirs >> doublings, reduced(cells, 2**doublings)
+        self.index, inverse = np.unique(np.concatenate([self.index, theirs]), return_inverse=True)
+        self.rows = np.bincount(inverse, np.concatenate([self.rows, later.rows]), self.index.size).astype(np.int64)
+        self._hold(cells)
+
+    def _hold(self, cells: Cells) -> None:
+        """Keep some cells, merged with the others now and then."""
+        self._parts.append(cells)
+        self._held += cells.index.size
         if len(self._parts) > 1 and self._held > self._most_held:
             self._parts = [self.cells()]
             self._held = self._parts[0].index.size
@@ -319,16 +364,26 @@ class Gathering:
 
     def _fit(self, at: Ints) -> int:
         """Double the width until all blocks are few enough; how often that was."""
+        if (
+            at.size
+            and at[-1] - (self.index[0] if self.index.size else at[0]) < self.max_blocks
+            and (at[0] >= self.index[:1]).all()
+        ):
+            return 0
         doublings, index = 0, np.union1d(self.index, at)
         while index.size > self.max_blocks:
             doublings, index = doublings + 1, np.unique(index >> 1)
+        self._widen(doublings)
+        return doublings
+
+    def _widen(self, doublings: int) -> None:
+        """Double the width so many times."""
         if doublings:
             self.width_s *= 2.0**doublings
             self.index, inverse = np.unique(self.index >> doublings, return_inverse=True)
             self.rows = np.bincount(inverse, self.rows, self.index.size).astype(np.int64)
             self._parts = [reduced(part, 2**doublings) for part in self._parts]
             self._held = sum(part.index.size for part in self._parts)
-        return doublings
 
     def cells(self) -> Cells:
         """One cell a column and block."""

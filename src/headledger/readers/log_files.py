@@ -13,12 +13,13 @@ import zlib
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
 from dataclasses import dataclass, replace
+from itertools import pairwise
 from pathlib import Path
 from typing import BinaryIO
 
 from headledger.errors import JobError, Problem
 
-BLOCK_BYTES = 6 * 1024 * 1024
+BLOCK_BYTES = 4 * 1024 * 1024
 """Read at a time: some 20,000 to 100,000 rows; bounds the memory of a pass. [B]"""
 SAMPLE_BYTES = 128 * 1024
 """Enough to see encoding and shape. [B]"""
@@ -79,13 +80,21 @@ class LogFile:
         """Whole lines from the start of the file, enough to see its shape."""
         return next(self.blocks(size=SAMPLE_BYTES), b"")
 
-    def blocks(self, *, size: int = BLOCK_BYTES, on_share: Callable[[float], None] | None = None) -> Iterator[bytes]:
+    def blocks(
+        self,
+        *,
+        size: int = BLOCK_BYTES,
+        on_share: Callable[[float], None] | None = None,
+        span: tuple[int, int] | None = None,
+    ) -> Iterator[bytes]:
         """Blocks of whole lines, each line ended by one line feed.
 
         Parameters
         ----------
         size : int
             [B]
+        span : (int, int), optional
+            First byte and the one past the last, of whole lines of a file that is read as it stands. [B]
         on_share : callable, optional
             Told the fraction of the file that has been read. [-]
 
@@ -94,6 +103,9 @@ class LogFile:
         JobError
             Unreadable, cut short, or not in the stated encoding.
         """
+        if span is not None or self.is_plain:
+            yield from self._plain_blocks(size, on_share, span or (0, self.path.stat().st_size))
+            return
         decoder = codecs.getincrementaldecoder(self.encoding)(errors="strict") if self.decoded else None
         whole = max(self.path.stat().st_size, 1)
         carry = b""
@@ -117,6 +129,33 @@ class LogFile:
                     on_share(min(bottom.tell() / whole, 1.0))
                 raw = following
 
+    @property
+    def is_plain(self) -> bool:
+        """Whether its bytes are read as they stand."""
+        return not (self.packed or self.decoded or self.bare_returns)
+
+    def _plain_blocks(
+        self, size: int, on_share: Callable[[float], None] | None, span: tuple[int, int]
+    ) -> Iterator[bytes]:
+        """The same of a file that is read as it stands."""
+        with _opened(self.path, self.name, packed=False) as (stream, _):
+            stream.seek(max(span[0], self.skip))
+            left = span[1] - stream.tell()
+            while left > 0:
+                block = stream.read(min(size, left))
+                left -= len(block)
+                if not block.endswith(b"\n"):
+                    rest = stream.readline(MOST_LINE_BYTES)
+                    left -= len(rest)
+                    if len(rest) >= MOST_LINE_BYTES:
+                        raise JobError(
+                            [Problem(self.name, "holds a line too long for a log", f"{len(rest)} bytes", "")]
+                        )
+                    block += rest if rest.endswith(b"\n") else rest + b"\n"
+                yield _one_line_ending(block)
+                if on_share:
+                    on_share(min(1.0 - left / max(span[1] - span[0], 1), 1.0))
+
     def _decode(self, decoder: codecs.IncrementalDecoder, raw: bytes, *, final: bool) -> bytes:
         """Bytes in UTF-8 of bytes in the file's encoding."""
         try:
@@ -128,6 +167,19 @@ class LogFile:
                 else str(error)
             )
             raise JobError([_wrong_encoding(self.name, self.encoding, found)]) from None
+
+
+def line_ranges(file: LogFile, count: int) -> list[tuple[int, int]]:
+    """The bytes of a file in so many parts of whole lines, about alike; fewer where lines are long. [B]"""
+    whole = file.path.stat().st_size
+    cuts = [0]
+    with _opened(file.path, file.name, packed=False) as (stream, _):
+        for number in range(1, count):
+            stream.seek(whole * number // count)
+            stream.readline()
+            cuts.append(stream.tell())
+    edges = sorted({*cuts, whole})
+    return list(pairwise(edges))
 
 
 def _wrong_encoding(name: str, encoding: str, found: str) -> Problem:

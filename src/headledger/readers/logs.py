@@ -2,9 +2,13 @@
 
 from __future__ import annotations
 
+import copy
+import multiprocessing
 import os
+import threading
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass, field
+from concurrent.futures import ProcessPoolExecutor
+from dataclasses import dataclass, field, replace
 from datetime import UTC, tzinfo
 from pathlib import Path
 from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
@@ -16,11 +20,14 @@ from headledger.errors import JobError, Problem
 from headledger.plant.digest import MOST_REJECTS, Digest, Reject, block_arrays
 from headledger.plant.job import Job, LogSettings
 from headledger.readers.log_blocks import Array, Fault, Gathering, Ints, Rows, cut_rows, parse_values
-from headledger.readers.log_files import BLOCK_BYTES, SAMPLE_BYTES, LogFile, look_at_file, text_of
+from headledger.readers.log_fast import clean_rows, suits
+from headledger.readers.log_files import BLOCK_BYTES, SAMPLE_BYTES, LogFile, line_ranges, look_at_file, text_of
 from headledger.readers.log_shape import LogShape, find_shape
 from headledger.readers.log_stamps import DayOrder, LocalClock, StampKind, StampReader, format_pattern
 
 GOOD_QUALITY = ("good", "ok", "192")
+LEAST_PART_BYTES = 24 * 1024 * 1024
+"""A part of a file smaller than this is not worth a process. [B]"""
 MOST_STAMPS = 1_000_000
 """As many of the latest stamps are remembered, so that one that comes again out of order is known."""
 
@@ -65,6 +72,7 @@ def read_log(
     settings: LogSettings,
     timezone: str,
     max_blocks: int = 4096,
+    processes: int | None = None,
     on_progress: Callable[[float], None] | None = None,
 ) -> Digest:
     """The digest of one log.
@@ -80,6 +88,8 @@ def read_log(
         Of stamps that carry no offset, as an IANA name.
     max_blocks : int
         Blocks double in width until no more than these hold a row.
+    processes : int, optional
+        That share a large file; by default as many as there are processors, where they can be had without a start of their own.
     on_progress : callable, optional
         Told the fraction of the file that has been read. [-]
 
@@ -96,10 +106,67 @@ def read_log(
     file = look_at_file(path, name, settings.encoding)
     shape = find_shape(file, settings)
     stamps = _stamp_reader(file, shape, settings, zone)
-    reading = _Reading(name, shape, stamps, Gathering(max_blocks), _good_words(settings))
-    for rows, faults in _row_blocks(file, shape, on_share=on_progress):
-        reading.take(rows, faults)
-    return reading.digest()
+    gathering = Gathering(max_blocks, _rows_expected(file, shape))
+    bare = _Reading(name, shape, stamps, gathering, _good_words(settings))
+    parts = _parts_of(file, shape, stamps, processes)
+    if len(parts) > 1:
+        together = _read_together(bare, file, parts, on_progress)
+        if together is not None:
+            return together.digest()
+    return _read_part(bare, file, None, on_progress).digest()
+
+
+def _rows_expected(file: LogFile, shape: LogShape) -> int:
+    """About how many rows a wide log has, from the length of its first ones; 0 where its bytes do not tell."""
+    if not file.is_plain or shape.is_long:
+        return 0
+    sample = file.sample()
+    return file.path.stat().st_size * sample.count(b"\n") // max(len(sample), 1)
+
+
+def _read_part(
+    reading: _Reading, file: LogFile, span: tuple[int, int] | None, on_progress: Callable[[float], None] | None
+) -> _Reading:
+    """Read a log, or some whole lines of it, into a reading."""
+    shape, clean = reading.shape, suits(reading.shape)
+    for block, line in _line_blocks(file, shape, on_share=on_progress, span=span):
+        if not (clean and reading.take_clean(block)):
+            rows, faults, _ = cut_rows(block, line, shape)
+            reading.take(rows, faults)
+        reading.lines = line - 1 + block.count(b"\n")
+    return reading
+
+
+def _parts_of(file: LogFile, shape: LogShape, stamps: StampReader, processes: int | None) -> list[tuple[int, int]]:
+    """Parts of a large file for processes to share; one where it is small, packed, long, or its clock repeats hours."""
+    if not (file.is_plain and suits(shape) and stamps.clock.zone is UTC):
+        return []
+    wanted = processes if processes is not None else _processes_to_be_had()
+    most = file.path.stat().st_size // LEAST_PART_BYTES
+    return line_ranges(file, min(wanted, most)) if min(wanted, most) > 1 else []
+
+
+def _processes_to_be_had() -> int:
+    """Processors, where a process can be forked from one thread; else one: a start of its own would cost more than it brings."""
+    if "fork" not in multiprocessing.get_all_start_methods() or threading.active_count() > 1:
+        return 1
+    return os.cpu_count() or 1
+
+
+def _read_together(
+    bare: _Reading, file: LogFile, parts: list[tuple[int, int]], on_progress: Callable[[float], None] | None
+) -> _Reading | None:
+    """Read the parts of a file in processes of their own; None where some stamp of one may stand in another."""
+    context = multiprocessing.get_context("fork" if "fork" in multiprocessing.get_all_start_methods() else None)
+    with ProcessPoolExecutor(len(parts) - 1, mp_context=context) as pool:
+        waiting = [pool.submit(_read_part, bare, file, part, None) for part in parts[1:]]
+        first = _read_part(copy.deepcopy(bare), file, parts[0], on_progress)
+        others = [one.result() for one in waiting]
+    for other in others:
+        if other.row_count and not other.first_s > first.last_s:
+            return None
+        first.absorb(other)
+    return first
 
 
 def _zone(timezone: str) -> tzinfo:
@@ -120,18 +187,25 @@ def _good_words(settings: LogSettings) -> frozenset[str]:
     return frozenset(word.strip().casefold() for word in settings.good or GOOD_QUALITY)
 
 
-def _row_blocks(
-    file: LogFile, shape: LogShape, *, size: int | None = None, on_share: Callable[[float], None] | None = None
-) -> Iterator[tuple[Rows, list[Fault]]]:
-    """Rows of a log below its header, block by block."""
+def _line_blocks(
+    file: LogFile,
+    shape: LogShape,
+    *,
+    size: int | None = None,
+    on_share: Callable[[float], None] | None = None,
+    span: tuple[int, int] | None = None,
+) -> Iterator[tuple[bytes, int]]:
+    """Lines of a log below its header, block by block, each with the number of its first line, counted from the top of a span."""
     line = 1
-    for block in file.blocks(size=size or BLOCK_BYTES, on_share=on_share):
-        above = block.count(b"\n") if line + block.count(b"\n") <= shape.first_line else max(shape.first_line - line, 0)
-        block, line = _without_lines(block, above), line + above
+    if span is not None and span[0] > 0:
+        shape = replace(shape, first_line=0)
+    for block in file.blocks(size=size or BLOCK_BYTES, on_share=on_share, span=span):
+        lines = block.count(b"\n")
+        above = lines if line + lines <= shape.first_line else max(shape.first_line - line, 0)
+        block = _without_lines(block, above)
         if block:
-            rows, faults, lines = cut_rows(block, line, shape)
-            line += lines
-            yield rows, faults
+            yield block, line + above
+        line += lines
 
 
 def _without_lines(block: bytes, number: int) -> bytes:
@@ -176,7 +250,8 @@ def _find_day_first(file: LogFile, shape: LogShape) -> bool | None:
         The whole log does not say.
     """
     order = DayOrder()
-    for rows, _ in _row_blocks(file, shape, size=SAMPLE_BYTES):
+    for block, line in _line_blocks(file, shape, size=SAMPLE_BYTES):
+        rows, _, _ = cut_rows(block, line, shape)
         order.look(rows.cells(shape.stamp[0]))
         if not order.seen or order.day_first is not None:
             break
@@ -201,6 +276,10 @@ class _Seen:
         self._last, self._greatest = -np.inf, -np.inf
         self._recent: list[Array] = []
         self._held = 0
+
+    def is_later(self, seconds: Array) -> bool:
+        """Whether some stamps, in file order, rise and follow all that came before."""
+        return bool(seconds[0] > self._greatest and (np.diff(seconds) > 0.0).all())
 
     def look(self, seconds: Array) -> tuple[Bools, Bools]:
         """Which of some stamps, in file order, came before, and which are earlier than the one above them."""
@@ -240,6 +319,7 @@ class _Reading:
     first_s: float = np.inf
     last_s: float = -np.inf
     interval_s: float = 0.0
+    lines: int = 0
     seen: dict[int, _Seen] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
@@ -253,6 +333,31 @@ class _Reading:
         self.units.append(unit)
         self.rejected.append(0)
         return len(self.columns) - 1
+
+    def take_clean(self, block: bytes) -> bool:
+        """Take a block of which every cell is a number and every stamp later than the one before; False leaves it untaken."""
+        rows = clean_rows(block, self.shape)
+        if rows is None:
+            return False
+        clock = replace(self.stamps.clock)
+        seconds = self.stamps.seconds(rows.stamps)
+        seen = self.seen.setdefault(0, _Seen())
+        if np.isnan(seconds).any() or not seen.is_later(seconds):
+            self.stamps.clock = clock
+            return False
+        seen.look(seconds)
+        self.row_count += seconds.size
+        missing = np.isnan(rows.values)
+        if missing.any():
+            columns = [
+                (column, seconds[~gap], row[~gap])
+                for column, (row, gap) in enumerate(zip(rows.values, missing, strict=True))
+            ]
+            self._add(seconds, columns, seconds)
+        else:
+            self._see_stamps(seconds)
+            self.gathering.add_whole(seconds, rows.values, self.interval_s)
+        return True
 
     def take(self, rows: Rows, faults: list[Fault]) -> None:
         """Take one block of rows into account."""
@@ -393,12 +498,27 @@ class _Reading:
         """Hand rows and values on to the blocks."""
         if stamps.size == 0:
             return
+        self._see_stamps(stamps, apart)
+        self.gathering.add(row_s, columns, self.interval_s)
+
+    def absorb(self, later: _Reading) -> None:
+        """Take the reading of the lines that follow into account."""
+        self.rejects += [replace(reject, line=reject.line + self.lines) for reject in later.rejects]
+        del self.rejects[MOST_REJECTS:]
+        for why, number in later.reasons.items():
+            self.reasons[why] = self.reasons.get(why, 0) + number
+        self.rejected = [mine + theirs for mine, theirs in zip(self.rejected, later.rejected, strict=True)]
+        self.row_count, self.lines = self.row_count + later.row_count, self.lines + later.lines
+        self.first_s, self.last_s = min(self.first_s, later.first_s), max(self.last_s, later.last_s)
+        self.gathering.absorb(later.gathering)
+
+    def _see_stamps(self, stamps: Array, apart: Array | None = None) -> None:
+        """Note the first and last of some stamps, and, of the first ones, the time between them."""
         self.first_s, self.last_s = min(self.first_s, float(stamps.min())), max(self.last_s, float(stamps.max()))
         if not self.interval_s:
             steps = np.diff(stamps) if apart is None else apart
             steps = steps[steps > 0.0]
             self.interval_s = float(np.median(steps)) if steps.size else 1.0
-        self.gathering.add(row_s, columns, self.interval_s)
 
     def _file(self, notes: list[_Note]) -> None:
         """Count the rejects of a block, and keep the first of them one by one."""
