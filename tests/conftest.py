@@ -18,6 +18,8 @@ def pytest_configure() -> None:
     os.environ["TEXTUAL_ANIMATIONS"] = "none"
     # A plugin has imported textual by now, so that the variable alone comes too late for this process.
     pytest.MonkeyPatch().setattr(textual.constants, "TEXTUAL_ANIMATIONS", "none")
+    # what tests read is never kept, and what was kept is never trusted
+    os.environ["HEADLEDGER_CACHE"] = ""
     for name in ("NO_COLOR", "FORCE_COLOR", "TEXTUAL_THEME", "HEADLEDGER_TRACEBACK", "COLUMNS", "LINES"):
         os.environ.pop(name, None)
     hypothesis.settings.register_profile("house", deadline=None, max_examples=60, derandomize=True)

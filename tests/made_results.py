@@ -184,7 +184,7 @@ def sound_result() -> CheckResult:
     """Every gauge passes, no cause, nothing rejected."""
     return CheckResult(
         job=made_job(),
-        inputs=(InputFile(file="log.csv", sha256="ab" * 32, rows=5400, rejected=0),),
+        inputs=(InputFile(file="log.csv", rows=5400, rejected=0, fingerprint=lambda: "ab" * 32),),
         spells=(made_spell(1, SpellKind.STILL, 0.0), made_spell(2, SpellKind.FLOWING, 36.0)),
         clean_probability=0.97,
         gauges=tuple(found_gauge(f"PT-{i}", f"S{min(i, 4)}", Verdict.PASS) for i in range(1, 6)),
@@ -232,7 +232,7 @@ def troubled_result() -> CheckResult:
     return replace(
         sound,
         spells=(made_spell(1, SpellKind.STILL, 0.0), made_spell(2, SpellKind.FLOWING, 36.0, blocked=True)),
-        inputs=(InputFile(file="log.csv", sha256="ab" * 32, rows=5400, rejected=1),),
+        inputs=(InputFile(file="log.csv", rows=5400, rejected=1, fingerprint=lambda: "ab" * 32),),
         clean_probability=0.004,
         gauges=(*sound.gauges[:2], failed, open_question, alone),
         causes=(ZERO_SHIFT, BLOCKAGE),

@@ -8,6 +8,7 @@ folder for temporary files. Each figure is of a process of its own; ratios are t
 
 from __future__ import annotations
 
+import os
 import subprocess
 import sys
 import tempfile
@@ -27,6 +28,16 @@ from headledger.plant.job import LogSettings
 from headledger.readers.logs import read_log
 if __name__ == "__main__":
     read_log(Path({path!r}), name="log.csv", settings=LogSettings(), timezone="UTC", processes={processes})
+"""
+OPENED = """
+from pathlib import Path
+from headledger.plant.job import Job, LogSettings
+from headledger.readers.logs import read_logs
+from headledger.records.digest_cache import recalled_digest, remember_digest
+if __name__ == "__main__":
+    path = Path({path!r})
+    job = Job(folder=path.parent, title="", stations=(), runs=(), gauges=(), log_files=(path,))
+    read_logs(job, recall=recalled_digest, remember=remember_digest)
 """
 MEASURED = """
 import resource, time
@@ -75,6 +86,10 @@ def main(rows: int, columns: int, *, folder: str = "") -> None:
     measure(PANDAS.format(path=str(path)))  # warms the file
     beside, memory = measure(PANDAS.format(path=str(path)))
     print(f"chunked pandas            {beside:6.2f} s  1.00      {memory:4.0f} MB")
+    os.environ["HEADLEDGER_CACHE"] = tempfile.mkdtemp()
+    measure(OPENED.format(path=str(path)))
+    seconds, memory = measure(OPENED.format(path=str(path)))
+    print(f"opened again              {seconds:6.2f} s            {memory:4.0f} MB")
     for processes in (1, 2):
         seconds, memory = measure(DIGEST.format(path=str(path), processes=processes))
         ratio = seconds / beside

@@ -31,8 +31,9 @@ from headledger.errors import JobError, NothingToCheckError, Problem
 from headledger.plant.digest import Digest
 from headledger.plant.job import Job
 from headledger.readers.job import read_job
-from headledger.readers.log_files import file_sha256
+from headledger.readers.log_files import sha256_in_background
 from headledger.readers.logs import read_logs
+from headledger.records.digest_cache import recalled_digest, remember_digest
 
 Progress = Callable[[str, float], None]
 
@@ -71,7 +72,12 @@ def check_folder(
     tell("reading the job", 0.0)
     job = read_job(folder)
     tell("reading the log", 0.05)
-    digests = read_logs(job, on_progress=lambda share: tell("reading the log", 0.05 + 0.35 * share))
+    digests = read_logs(
+        job,
+        recall=recalled_digest,
+        remember=remember_digest,
+        on_progress=lambda share: tell("reading the log", 0.05 + 0.35 * share),
+    )
     return check_job(job, digests, answers=answers, on_progress=tell, should_stop=should_stop)
 
 
@@ -166,12 +172,15 @@ def _inputs(job: Job, digests: Sequence[Digest]) -> tuple[InputFile, ...]:
     """Every file that the result rests on, with its fingerprint."""
     logs = {
         digest.file: InputFile(
-            file=digest.file, sha256=file_sha256(path), rows=digest.row_count, rejected=digest.reject_count
+            file=digest.file,
+            rows=digest.row_count,
+            rejected=digest.reject_count,
+            fingerprint=sha256_in_background(path),
         )
         for digest, path in zip(digests, job.log_files, strict=True)
     }
     tables = [
-        InputFile(file=path.name, sha256=file_sha256(path), rows=0, rejected=0)
+        InputFile(file=path.name, rows=0, rejected=0, fingerprint=sha256_in_background(path))
         for path in job.files
         if path not in job.log_files
     ]

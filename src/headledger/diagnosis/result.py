@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from enum import StrEnum
 from typing import TYPE_CHECKING
@@ -300,12 +301,25 @@ class NextCheck:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class InputFile:
-    """A file that the result rests on."""
+    """A file that the result rests on.
+
+    Parameters
+    ----------
+    file : str
+    rows, rejected : int
+    fingerprint : callable
+        Its sha256 in hexadecimal, once all of it has been read.
+    """
 
     file: str
-    sha256: str
     rows: int
     rejected: int
+    fingerprint: Callable[[], str]
+
+    @property
+    def sha256(self) -> str:
+        """SHA-256 of the file's bytes, in hexadecimal; waits until it is known."""
+        return self.fingerprint()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

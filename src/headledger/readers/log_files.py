@@ -9,6 +9,7 @@ from __future__ import annotations
 import codecs
 import gzip
 import hashlib
+import threading
 import zlib
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager
@@ -37,6 +38,29 @@ def file_sha256(path: Path) -> str:
         while block := file.read(1 << 20):
             digest.update(block)
     return digest.hexdigest()
+
+
+def sha256_in_background(path: Path) -> Callable[[], str]:
+    """What waits for a file's SHA-256, which is read meanwhile; raises what the reading raised."""
+    found: list[str | OSError] = []
+
+    def read() -> None:
+        try:
+            found.append(file_sha256(path))
+        except OSError as error:
+            found.append(error)
+
+    # a daemon: whoever quits the screen does not wait for a hash that nobody asked for
+    thread = threading.Thread(target=read, daemon=True)
+    thread.start()
+
+    def value() -> str:
+        thread.join()
+        if isinstance(found[0], OSError):
+            raise found[0]
+        return found[0]
+
+    return value
 
 
 def text_of(raw: bytes) -> str:

@@ -34,12 +34,22 @@ MOST_STAMPS = 1_000_000
 Bools = NDArray[np.bool_]
 
 
-def read_logs(job: Job, *, on_progress: Callable[[float], None] | None = None) -> tuple[Digest, ...]:
+def read_logs(
+    job: Job,
+    *,
+    recall: Callable[[Path, str], Digest | None] | None = None,
+    remember: Callable[[Path, str, Digest], None] | None = None,
+    on_progress: Callable[[float], None] | None = None,
+) -> tuple[Digest, ...]:
     """One digest a log file of the job, in its order.
 
     Parameters
     ----------
     job : Job
+    recall : callable, optional
+        The digest of a file as it was read before with the same settings, where it is known and the file unchanged.
+    remember : callable, optional
+        Told the digest of a file that had to be read, and its settings.
     on_progress : callable, optional
         Told the fraction of all logs that has been read. [-]
 
@@ -53,7 +63,13 @@ def read_logs(job: Job, *, on_progress: Callable[[float], None] | None = None) -
     for path, size in zip(job.log_files, sizes, strict=True):
         tell = _share_teller(on_progress, before / whole, size / whole)
         name = Path(os.path.relpath(path, job.folder)).as_posix()
-        digests.append(read_log(path, name=name, settings=job.log, timezone=job.timezone, on_progress=tell))
+        said = repr((name, job.log, job.timezone))
+        digest = recall(path, said) if recall else None
+        if digest is None:
+            digest = read_log(path, name=name, settings=job.log, timezone=job.timezone, on_progress=tell)
+            if remember:
+                remember(path, said, digest)
+        digests.append(digest)
         before += size
     return tuple(digests)
 
