@@ -24,7 +24,7 @@ from headledger.diagnosis.planned import plan_states
 from headledger.diagnosis.search import search
 from headledger.diagnosis.sight import SEEN, SIGHT_KINDS
 from headledger.readers.job import read_job
-from tests.benchmarks.judgement_rates import wilson
+from tests.benchmarks.reliability import wilson
 from tests.sample_results import FOLDER, SAMPLES
 
 LENGTHS = (0.75 * SEEN, SEEN, 1.25 * SEEN)

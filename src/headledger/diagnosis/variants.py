@@ -11,6 +11,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
+from scipy.special import log_ndtr
 
 from headledger.diagnosis.causes.base import Mark
 from headledger.diagnosis.estimate import Linear, Model
@@ -103,6 +104,7 @@ def spoilt_variants(linear: Linear, residual: Array) -> list[Variant]:
         at = np.flatnonzero(_at_limit(gauge, readings))
         if at.size:
             density = limit_log_density(gauge, readings[at], noise[at])
+            density += _log_beyond(gauge, readings[at], precision, pull, rows[at])
             one = _spoilt(linear, index, CauseKind.AT_LIMIT, (rows, pieces), at, density, 1.0)
             found.append(replace(one, gain=density - _log_given_rest(precision, pull, rows[at])))
     return found
@@ -114,6 +116,16 @@ def _log_given_rest(precision: Array, pull: Array, rows: NDArray[np.int64]) -> f
     _, logarithm = np.linalg.slogdet(block)
     square = float(pull[rows] @ np.linalg.solve(block, pull[rows]))
     return 0.5 * (float(logarithm) - square - rows.size * float(np.log(2.0 * np.pi)))
+
+
+def _log_beyond(gauge: Gauge, readings_pa: Array, precision: Array, pull: Array, rows: NDArray[np.int64]) -> float:
+    """Log of the probability that what the readings should be lies beyond the end of the range at which they stand, as all else has it."""
+    covariance = np.linalg.inv(precision[np.ix_(rows, rows)])
+    should_pa = readings_pa - covariance @ pull[rows]
+    margin = LIMIT_SHARE * gauge.span_pa
+    high = readings_pa > (gauge.range_low_pa + gauge.range_high_pa) / 2.0
+    beyond = np.where(high, should_pa - gauge.range_high_pa, gauge.range_low_pa - should_pa) + margin
+    return float(np.min(log_ndtr(beyond / np.sqrt(np.diag(covariance)))))
 
 
 def stuck_log_density(gauge: Gauge, readings_pa: Array, noise_pa: Array) -> float:
