@@ -49,7 +49,9 @@ def make_log(path: Path, rows: int, columns: int) -> None:
             block = stamps[start : start + 20_000]
             values = 3.0 + 0.01 * np.arange(columns - 1) + 0.02 * rng.standard_normal((block.size, columns - 1))
             text = np.char.mod("%.6f", values)
-            file.writelines(f"{stamp}," + ",".join(row) + "\n" for stamp, row in zip(block.astype(str), text, strict=True))
+            file.writelines(
+                f"{stamp}," + ",".join(row) + "\n" for stamp, row in zip(block.astype(str), text, strict=True)
+            )
     part.replace(path)
 
 
@@ -76,7 +78,9 @@ def main(rows: int = 500_000, columns: int = 43, folder: str = "") -> None:
     print(f"chunked pandas            {beside:6.2f} s  1.00      {memory:4.0f} MB")
     for processes in (1, 2):
         seconds, memory = measure(DIGEST.format(path=str(path), processes=processes))
-        print(f"digest, {processes} process{'es' if processes > 1 else '  '}       {seconds:6.2f} s  {seconds / beside:4.2f}      {memory:4.0f} MB a process")
+        print(
+            f"digest, {processes} process{'es' if processes > 1 else '  '}       {seconds:6.2f} s  {seconds / beside:4.2f}      {memory:4.0f} MB a process"
+        )
 
 
 if __name__ == "__main__":

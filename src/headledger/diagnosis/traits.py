@@ -18,8 +18,10 @@ from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.readings import Timeline
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.diagnosis.spells import Spell
+from headledger.physics.waves import travel_s
 from headledger.plant.digest import Digest
 from headledger.plant.job import SpellKind
+from headledger.statistics.lag import lagged
 from headledger.statistics.sizes import log_sum
 
 Array = NDArray[np.float64]
@@ -43,8 +45,11 @@ FEWEST_SAMPLES, FEWEST_GAUGES = 30, 3
 LONGEST_LAG_S, LAG_STEPS = 600.0, 24
 """Longest lag and offset looked for, and how many between. [s]"""
 
-SLOWEST_WAVE_M_S = 250.0
-"""Speed of a pressure wave in soft pipe, the slowest: what a change takes to travel is no lag. [m/s]"""
+BLUR_BLOCKS = 3.0
+"""A lag of so many blocks is none: two blocks blur it. [-]"""
+
+TRAVEL_STEPS = 8
+"""Delays tried up to the longest that a change may take through the pipe."""
 
 SETTLED_SHARE = 0.25
 """Longest lag that is looked for, as a part of the usual spell. [-]"""
@@ -182,10 +187,10 @@ def slow_gauges(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> 
         told = _own_and_others(layout, timeline, spells, (index,), others)
         if told is None or not lags.size:
             continue
-        tried = [_lagged(told.time_s, told.motions, float(lag)) for lag in (gauge.damping_s, *lags)]
-        errors = np.array([_unexplained(told, lagged) for lagged in tried])
-        degrees = _degrees(told, tried[1 + int(np.argmin(errors[1:]))], spells)
-        fit = _Fit(float(errors[0]), errors[1:], lags, degrees)
+        tried = [lagged(told.time_s, told.motions, float(lag)) for lag in lags]
+        errors = np.array([_unexplained(told, motions) for motions in tried])
+        degrees = _degrees(told, tried[int(np.argmin(errors))], spells)
+        fit = _Fit(_sound_error(layout, timeline, told, gauge.damping_s), errors, lags, degrees)
         if fit.log_ratio > 0.0:
             found.append(_timed(CauseKind.SLUGGISH, Place(gauge=gauge.tag), (index,), fit, len(layout.job.gauges)))
     return found
@@ -205,7 +210,8 @@ def late_logs(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> li
         told = _own_and_others(layout, timeline, spells, own, elsewhere)
         if file == main or told is None or not steps.size:
             continue
-        fit = _offset_fit(timeline, spells, told, np.concatenate([-steps[::-1], steps]))
+        none = _sound_error(layout, timeline, told)
+        fit = _offset_fit(timeline, spells, told, np.concatenate([-steps[::-1], steps]), none)
         if fit.log_ratio > 0.0:
             tags = tuple(layout.job.gauges[k].tag for k in own)
             place = Place(gauge=tags[0]) if len(tags) == 1 else Place(gauges=tags)
@@ -213,7 +219,7 @@ def late_logs(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> li
     return found
 
 
-def _offset_fit(timeline: Timeline, spells: Sequence[Spell], told: _Told, offsets: Array) -> _Fit:
+def _offset_fit(timeline: Timeline, spells: Sequence[Spell], told: _Told, offsets: Array, none: float) -> _Fit:
     """How offsets of the stamps explain what the gauges of a log did, looked at finely about the best."""
 
     def error(offset_s: float) -> float:
@@ -222,10 +228,11 @@ def _offset_fit(timeline: Timeline, spells: Sequence[Spell], told: _Told, offset
     errors = np.array([error(float(offset)) for offset in offsets])
     best = float(offsets[int(np.argmin(errors))])
     fine = best + np.linspace(-1.0, 1.0, 41) * max(0.3 * abs(best), timeline.width_s)
+    fine = fine[np.abs(fine) >= np.abs(offsets).min()]
     fine_errors = np.array([error(float(offset)) for offset in fine])
     best = float(fine[int(np.argmin(fine_errors))])
     degrees = _degrees(told, _shifted(told.time_s, told.motions, best), spells)
-    return _Fit(error(0.0), np.concatenate([errors, fine_errors]), np.concatenate([offsets, fine]), degrees)
+    return _Fit(none, np.concatenate([errors, fine_errors]), np.concatenate([offsets, fine]), degrees)
 
 
 @dataclass(frozen=True, slots=True)
@@ -269,8 +276,26 @@ def _timed(kind: CauseKind, place: Place, own: tuple[int, ...], fit: _Fit, place
 
 def _allowed_s(layout: Layout, timeline: Timeline) -> float:
     """A lag that is none: what a change takes to travel through all the pipe, and what two blocks blur. [s]"""
-    length = sum(run.length_m for run in layout.job.runs)
-    return max(length / SLOWEST_WAVE_M_S, 3.0 * timeline.width_s)
+    return max(_travel_s(layout), BLUR_BLOCKS * timeline.width_s)
+
+
+def _travel_s(layout: Layout) -> float:
+    """What a change takes to travel through all the pipe by the slowest wave. [s]"""
+    return travel_s(sum(run.length_m for run in layout.job.runs))
+
+
+def _sound_error(layout: Layout, timeline: Timeline, told: _Told, damping_s: float = 0.0) -> float:
+    """Squares that sound gauges leave unexplained: at their damping, or as best they may where changes take their time to travel.
+
+    A wave comes later or earlier than at the others, and a long line fills slowly: both a delay and a lag may be the pipe's own.
+    """
+    damped = lagged(told.time_s, told.motions, damping_s)
+    tried = [damped]
+    if _travel_s(layout) > BLUR_BLOCKS * timeline.width_s:
+        allowed = _travel_s(layout) * np.linspace(0.0, 1.0, TRAVEL_STEPS + 1)[1:]
+        tried += [_shifted(told.time_s, damped, float(way * delay)) for delay in allowed for way in (1.0, -1.0)]
+        tried += [lagged(told.time_s, told.motions, damping_s + float(delay)) for delay in allowed]
+    return min(_unexplained(told, motions) for motions in tried)
 
 
 def _longest_lag_s(timeline: Timeline, spells: Sequence[Spell]) -> float:
@@ -317,18 +342,6 @@ def _own_and_others(
     readings = reading[known][:, used]
     floor = near.sum() * (MISFIT_SHARE * readings.std(axis=0)) ** 2
     return _Told(time_s, readings, left[:, :count] * size[:count], near, floor)
-
-
-def _lagged(time_s: Array, motions: Array, lag_s: float) -> Array:
-    """Motions as a first-order lag would show them."""
-    if lag_s <= 0.0:
-        return motions
-    out = np.empty_like(motions)
-    out[0] = motions[0]
-    keep = np.exp(-np.diff(time_s) / lag_s)
-    for row in range(1, motions.shape[0]):
-        out[row] = keep[row - 1] * out[row - 1] + (1.0 - keep[row - 1]) * motions[row]
-    return out
 
 
 def _shifted(time_s: Array, motions: Array, offset_s: float) -> Array:
