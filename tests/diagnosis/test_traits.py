@@ -37,9 +37,14 @@ def readings(seed: int = 5) -> tuple[np.ndarray, np.ndarray, np.ndarray]:
 
 
 def write_job(
-    folder: Path, *, exchange: str = "open", runs_with_meter: bool = True, logs: tuple[str, ...] = ("log.csv",)
+    folder: Path,
+    *,
+    exchange: str = "open",
+    runs_with_meter: bool = True,
+    logs: tuple[str, ...] = ("log.csv",),
+    length_m: float = 0.0,
 ) -> Path:
-    """A level line of five stations; each run loses 10 kPa at 36 m³/h."""
+    """A level line of five stations; each run loses 10 kPa at 36 m³/h, whatever its length, by a C at which pipe loses nothing."""
     folder.mkdir(exist_ok=True)
     names = ", ".join(f'"{name}"' for name in logs)
     (folder / "job.toml").write_text(
@@ -50,10 +55,10 @@ def write_job(
     rows = [f"{name},0,{end}" for name, end in zip(STATIONS, ends, strict=True)]
     (folder / "stations.csv").write_text("\n".join(["station,elevation [m],exchange", *rows]) + "\n")
     rows = [
-        f"R{i + 1},{STATIONS[i]},{STATIONS[i + 1]},0,100,10,36,{'FT-1,m3/h' if i == 0 and runs_with_meter else ','}"
+        f"R{i + 1},{STATIONS[i]},{STATIONS[i + 1]},{length_m:g},1e9,100,10,36,{'FT-1,m3/h' if i == 0 and runs_with_meter else ','}"
         for i in range(4)
     ]
-    head = "run,from,to,length [m],bore [mm],rated drop [kPa],rated flow [m3/h],flow column,flow unit"
+    head = "run,from,to,length [m],hazen-williams C,bore [mm],rated drop [kPa],rated flow [m3/h],flow column,flow unit"
     (folder / "runs.csv").write_text("\n".join([head, *rows]) + "\n")
     rows = [f"{tag},{at},barg,0,10,0.25 % span,1 % span,0.001" for tag, at in zip(GAUGES, STATIONS, strict=True)]
     head = "tag,station,unit,range low,range high,accuracy,tolerance,division"
@@ -70,8 +75,10 @@ def write_log(path: Path, time_s: np.ndarray, columns: dict[str, np.ndarray]) ->
     path.write_text("\n".join(lines) + "\n")
 
 
-def checked(folder: Path, time_s: np.ndarray, bars: np.ndarray, flow: np.ndarray) -> CheckResult:
-    write_job(folder)
+def checked(
+    folder: Path, time_s: np.ndarray, bars: np.ndarray, flow: np.ndarray, *, length_m: float = 0.0
+) -> CheckResult:
+    write_job(folder, length_m=length_m)
     write_log(folder / "log.csv", time_s, dict(zip(GAUGES, bars.T, strict=True)) | {"FT-1": flow})
     return check_folder(folder)
 
@@ -119,6 +126,28 @@ def test_late_log_is_found_and_set_right(tmp_path: Path, late_s: float):
     assert (found.kind, set(found.place.gauges), found.accepted) == (CauseKind.CLOCK_OFFSET, {"PT-4", "PT-5"}, True)
     assert found.size == pytest.approx(late_s, abs=4.0)
     assert {gauge.verdict for gauge in result.gauges} == {Verdict.PASS}
+
+
+@pytest.mark.parametrize(("length_m", "raised"), [(0.0, {CauseKind.SLUGGISH}), (5000.0, set())])
+def test_delay_of_a_gauge_is_a_trait_only_where_no_wave_takes_as_long(
+    tmp_path: Path, length_m: float, raised: set[CauseKind]
+):
+    """PT-5 shows all 50 s later; through 4 runs of 5 km a wave of 250 m/s takes 80 s, through a short line none."""
+    time_s, bars, flow = readings()
+    rows = int(50.0 / STEP_S)
+    bars[:, 4] = np.concatenate([np.full(rows, bars[0, 4]), bars[:-rows, 4]])
+    result = checked(tmp_path / "job", time_s, bars, flow, length_m=length_m)
+    assert {cause.kind for cause in result.causes if cause.probability > 0.05} == raised
+
+
+@pytest.mark.parametrize("late_s", [40.0, -30.0])
+def test_late_log_on_a_long_line_is_no_trait(tmp_path: Path, late_s: float):
+    """What is a clock's fault on a short line may be a wave's way through 20 km, 80 s at 250 m/s."""
+    time_s, bars, flow = readings()
+    folder = write_job(tmp_path / "job", logs=("log.csv", "late.csv"), length_m=5000.0)
+    write_log(folder / "log.csv", time_s, dict(zip(GAUGES[:3], bars.T[:3], strict=True)) | {"FT-1": flow})
+    write_log(folder / "late.csv", time_s + late_s, dict(zip(GAUGES[3:], bars.T[3:], strict=True)))
+    assert not [cause for cause in check_folder(folder).causes if cause.probability > 0.05]
 
 
 def test_leak_of_a_shut_section_is_found_with_its_rate(tmp_path: Path):

@@ -22,7 +22,7 @@ from headledger.diagnosis.priors import CountPrior, mark_shares
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.diagnosis.starting import first_points
 from headledger.diagnosis.state import Point
-from headledger.diagnosis.traits import TRAIT_KINDS
+from headledger.diagnosis.trait import TRAIT_KINDS
 from headledger.diagnosis.variants import VARIANT_KINDS, Variant, closed_variants, spoilt_variants, vapour_variants
 from headledger.statistics.sizes import NODES, log_sum
 

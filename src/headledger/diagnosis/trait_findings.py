@@ -13,7 +13,7 @@ from headledger.diagnosis.findings import LEFT_OUT, Finding
 from headledger.diagnosis.priors import CountPrior
 from headledger.diagnosis.result import CauseKind, Rival
 from headledger.diagnosis.search import Posterior
-from headledger.diagnosis.traits import Trait
+from headledger.diagnosis.trait import Trait
 from headledger.diagnosis.verdicts import own_cause_probability
 from headledger.diagnosis.wording import trait_statement
 from headledger.statistics.sizes import SizePrior

@@ -4,10 +4,12 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
+from dataclasses import replace
 from datetime import datetime
 from typing import TYPE_CHECKING
 from zoneinfo import ZoneInfo
 
+from headledger.diagnosis.descents import sweep_of
 from headledger.diagnosis.result import CauseKind, FurtherReading, GaugeSight, Place, TroubleSight, Verdict
 from headledger.plant.job import Job, SpellKind
 from headledger.quantities import format_quantity as amount
@@ -220,13 +222,32 @@ def _pipe_statement(model: Model, finding: Finding, at: str, size: float) -> str
         return _loss_statement(model, finding, at, size)
     if finding.kind is CauseKind.AIR_POCKET and finding.mark.unit:
         still = ", at rest too" if "still" in finding.mark.form else ""
-        return f"{at} drops the grade line by {amount(size, finding.mark.unit)} at every flow{still}: air is trapped on its descent."
+        height = amount(size, finding.mark.unit)
+        swept = _sweep_clause(model, finding)
+        return f"{at} drops the grade line by {height} at every flow{still}: air is trapped on its descent.{swept}"
     if finding.kind is CauseKind.DENSITY_ERROR:
         heavier = "heavier" if size > 1.0 else "lighter"
         return f"The liquid is {100.0 * abs(size - 1.0):.2g} % {heavier} than stated (temperature or concentration)."
     if finding.kind is CauseKind.FLOW_METER_ERROR:
         return f"The flow meter of {at} reads {size:.3g} times the true flow: all losses are off with its square."
     return f"{at}: {kind_words(finding.kind)}."
+
+
+def _sweep_clause(model: Model, finding: Finding) -> str:
+    """Whether the greatest flow would sweep a pocket out, beside the range of what authors say of its slope."""
+    sweep = sweep_of(model.layout, finding)
+    if sweep is None:
+        return ""
+    length = model.layout.job.display.length
+    unit = replace(length, text=f"{length.text}/s")
+    at, lowest, highest = (amount(v, unit, digits=2) for v in (sweep.velocity_m_s, sweep.lowest_m_s, sweep.highest_m_s))
+    what = "may move"
+    if sweep.velocity_m_s < sweep.lowest_m_s:
+        what = "stays"
+    elif sweep.velocity_m_s > sweep.highest_m_s:
+        what = "should be swept out"
+    between = lowest.removesuffix(f" {unit.text}")
+    return f" At {at} it {what}: authors put clearing between {between} and {highest} on that slope."
 
 
 def _loss_statement(model: Model, finding: Finding, at: str, size: float) -> str:

@@ -6,6 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from headledger.diagnosis.causes.base import Mark, View
+from headledger.diagnosis.descents import descents
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.statistics.sizes import SizePrior
 
@@ -16,9 +17,9 @@ def marks(view: View) -> list[Mark]:
     """Marks of every descent with the flow: gas that keeps its height or shrinks with pressure, there when still or not."""
     found = []
     for run, noun in enumerate(view.layout.job.runs):
-        for distance_m, descent_m in descents(view, run):
-            place = Place(run=noun.name, distance_m=distance_m if noun.name in view.layout.levelled else None)
-            found += _forms(view, run, place, descent_m)
+        for descent in descents(view.layout, run, _direction(view, run)):
+            place = Place(run=noun.name, distance_m=descent.distance_m if noun.name in view.layout.levelled else None)
+            found += _forms(view, run, place, descent.fall_m)
     return found
 
 
@@ -44,35 +45,6 @@ def _forms(view: View, run: int, place: Place, descent_m: float) -> list[Mark]:
                     form=" ".join((["shrinks"] if shrinks else []) + (["still"] if still else [])),
                 )
             )
-    return found
-
-
-def descents(view: View, run: int) -> list[tuple[float, float]]:
-    """Where a run's line turns down in the direction of its flow, and how far it falls from there.
-
-    Parameters
-    ----------
-    view : View
-    run : int
-
-    Returns
-    -------
-    list of (float, float)
-        Distance of each high point from the run's start, and the fall after it; none where nothing flows. [m], [m]
-    """
-    direction = _direction(view, run)
-    if direction == 0.0:
-        return []
-    distance, height = view.layout.profiles[run]
-    if direction < 0.0:
-        distance, height = distance[::-1], height[::-1]
-    found: list[tuple[float, float]] = []
-    top = 0
-    for point in range(1, height.size):
-        if height[point] >= height[point - 1]:
-            top = point
-        elif point + 1 == height.size or height[point + 1] >= height[point]:
-            found.append((float(distance[top]), float(height[top] - height[point])))
     return found
 
 
