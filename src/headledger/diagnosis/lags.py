@@ -71,7 +71,10 @@ def slow_gauges(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> 
         tried = [lagged(told.time_s, told.motions, float(lag)) for lag in lags]
         errors = np.array([_unexplained(told, motions) for motions in tried])
         degrees = _degrees(told, tried[int(np.argmin(errors))], spells)
-        fit = _Fit(_sound_error(layout, timeline, told, gauge.damping_s), errors, lags, degrees)
+        # a lag smooths the others' noise away as well as it delays: what smoothing alone explains is none
+        smooth = np.array([_unexplained(told, _smoothed(told.time_s, told.motions, float(lag))) for lag in lags])
+        sound = np.minimum(_sound_error(layout, timeline, told, gauge.damping_s), smooth)
+        fit = _Fit(sound, errors, lags, degrees)
         if fit.log_ratio > 0.0:
             found.append(_timed(CauseKind.SLUGGISH, Place(gauge=gauge.tag), (index,), fit, len(layout.job.gauges)))
     return found
@@ -118,9 +121,11 @@ def _offset_fit(timeline: Timeline, spells: Sequence[Spell], told: _Told, offset
 
 @dataclass(frozen=True, slots=True)
 class _Fit:
-    """How much better lags explain what a gauge did than none does: unexplained squares, and how many readings they are worth."""
+    """How much better lags explain what a gauge did than none does: unexplained squares, of none beside each lag, and how many readings
+    they are worth.
+    """
 
-    none: float
+    none: float | Array
     errors: Array
     lags: Array
     degrees: float
@@ -223,6 +228,12 @@ def _own_and_others(
     readings = reading[known][:, used]
     floor = near.sum() * (MISFIT_SHARE * readings.std(axis=0)) ** 2
     return _Told(time_s, readings, left[:, :count] * size[:count], near, floor)
+
+
+def _smoothed(time_s: Array, motions: Array, lag_s: float) -> Array:
+    """Motions smoothed as a lag smooths them, forwards and backwards in time, so that nothing is delayed."""
+    backwards = lagged(-time_s[::-1], motions[::-1], lag_s)[::-1]
+    return np.asarray((lagged(time_s, motions, lag_s) + backwards) / 2.0)
 
 
 def _shifted(time_s: Array, motions: Array, offset_s: float) -> Array:

@@ -10,7 +10,7 @@ from tests.make_samples import Dial, Pipe
 
 PREFERRED_BAR = (1.0, 1.6, 2.5, 4.0, 6.0, 10.0, 16.0, 25.0)
 TYPES = (("0.25 % span", 0.0025, 1.0), ("0.5 % span", 0.005, 1.6), ("class 1.0", 0.01, 2.0), ("class 0.6", 0.006, 1.6))
-GAP_BAR = 0.3
+GAP_BAR, LEAST_HEAD_M = 0.3, 5.0
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -78,7 +78,19 @@ def drawn_system(rng: np.random.Generator, *, awkward: bool = False) -> System:
         wander_pa=float(rng.choice([300.0, 4000.0])) if awkward else 300.0,
         barometer_stated=not awkward or rng.random() < 0.5,
     )
-    return _with_gauges(rng, system, awkward=awkward)
+    return _with_gauges(rng, _above_air(system), awkward=awkward)
+
+
+def _above_air(system: System) -> System:
+    """The system with heads so high that no station comes below the pressure of the air."""
+    from tests.benchmarks.simulator.readings import true_heads
+
+    heights = {name: z for name, z, _ in system.stations}
+    spare = [
+        min(head - heights[name] for name, head in true_heads(system, k).items()) for k in range(len(system.flows))
+    ]
+    lift = max(0.0, LEAST_HEAD_M - min(spare))
+    return replace(system, heads=tuple(head + lift for head in system.heads))
 
 
 def _moved(pipes: tuple[Pipe, ...]) -> tuple[Pipe, ...]:
