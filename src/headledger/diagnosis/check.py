@@ -17,13 +17,13 @@ from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.next_checks import next_checks
 from headledger.diagnosis.readings import read_timeline, with_logged_barometer
 from headledger.diagnosis.report import cause_found, gauge_found, spells_found
-from headledger.diagnosis.result import CheckResult, InputFile, Trend
+from headledger.diagnosis.result import CauseKind, CheckResult, InputFile, Trend
 from headledger.diagnosis.search import search
 from headledger.diagnosis.sight import sight_of
 from headledger.diagnosis.site_actions import parse_answer
 from headledger.diagnosis.spells import find_spells, unread_spells
 from headledger.diagnosis.trait_findings import trait_findings
-from headledger.diagnosis.traits import find_traits, undone
+from headledger.diagnosis.traits import find_traits, undone, undone_traits
 from headledger.diagnosis.vapour import vapour_findings
 from headledger.diagnosis.verdicts import judge_gauge
 from headledger.diagnosis.wording import unexplained_sentence
@@ -119,6 +119,8 @@ def check_job(
     if right is not None:
         timeline = read_timeline(layout, right)
         stretches = find_spells(layout, timeline)
+        again = find_traits(layout, timeline, stretches)
+        traits = (*undone_traits(traits), *(one for one in again if one.kind is not CauseKind.CLOCK_OFFSET))
     pieces = spell_pieces(layout, timeline, stretches)
     if not pieces:
         raise NothingToCheckError(

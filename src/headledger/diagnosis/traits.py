@@ -35,6 +35,9 @@ NOISE_SPREAD = 0.15
 NOISY_RANGE = (0.4, 3.0)
 """Common logarithm of how much noisier than its like a noisy signal is, from and to, evenly between. [-]"""
 
+JUMPS_SHARE = 0.03
+"""Part of a signal's steps, the widest, that say nothing of its noise. [-]"""
+
 NOISE_THAT_MATTERS = 0.2
 """Noise of a single reading below this part of the tolerance is no trouble. [-]"""
 
@@ -76,16 +79,12 @@ def noisy_gauges(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) ->
     """Gauges whose readings scatter far more than those of their like, with what all heads do together taken out."""
     gauges = layout.job.gauges
     single = np.array([not gauge.is_differential for gauge in gauges])
-    squares, counts = np.zeros(len(gauges)), np.zeros(len(gauges))
+    steps = [np.zeros((0, len(gauges)))]
     for spell in spells:
         reading = timeline.reading_pa[spell.first : spell.last]
         rest = reading - np.where(single[None, :], common_motion(reading, single)[:, None], 0.0)
-        steps = np.diff(rest, axis=0)
-        known = np.isfinite(steps)
-        squares += np.where(known, steps, 0.0).__pow__(2).sum(axis=0)
-        counts += known.sum(axis=0)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        noise = np.sqrt(squares / np.maximum(counts, 1.0) / 2.0)
+        steps.append(np.diff(rest, axis=0))
+    noise, counts = _scatter(np.concatenate(steps))
     usable = (counts >= FEWEST_SAMPLES) & (noise > 0.0)
     if usable.sum() < FEWEST_GAUGES:
         return []
@@ -112,6 +111,15 @@ def noisy_gauges(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) ->
             )
         )
     return found
+
+
+def _scatter(steps: Array) -> tuple[Array, Array]:
+    """Noise of each column from its successive differences, and how many there are; the widest are left out: one jump is no noise."""
+    squares = np.sort(np.where(np.isfinite(steps), steps**2, np.inf), axis=0)
+    counts = np.isfinite(steps).sum(axis=0)
+    kept = np.ceil((1.0 - JUMPS_SHARE) * counts)
+    squares[np.arange(squares.shape[0])[:, None] >= kept[None, :]] = 0.0
+    return np.sqrt(squares.sum(axis=0) / np.maximum(kept, 1.0) / 2.0), counts
 
 
 def leaks(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> list[Trait]:
@@ -173,6 +181,11 @@ def _student(centre: Array, value: float, deviation: float, freedom: float) -> A
     return np.asarray(norm - 0.5 * (freedom + 1.0) * np.log1p(away**2 / freedom))
 
 
+def undone_traits(traits: Sequence[Trait]) -> tuple[Trait, ...]:
+    """Offsets of clocks that are beyond doubt, and so undone before the rest is judged."""
+    return tuple(one for one in traits if one.kind is CauseKind.CLOCK_OFFSET and one.log_ratio > BEYOND_DOUBT)
+
+
 def undone(digests: Sequence[Digest], traits: Sequence[Trait], timeline: Timeline) -> tuple[Digest, ...] | None:
     """The logs with stamps that are late beyond doubt set right; None where none is.
 
@@ -187,11 +200,7 @@ def undone(digests: Sequence[Digest], traits: Sequence[Trait], timeline: Timelin
     -------
     tuple of Digest or None
     """
-    late = {
-        timeline.gauge_files[trait.own[0]]: trait.size
-        for trait in traits
-        if trait.kind is CauseKind.CLOCK_OFFSET and trait.log_ratio > BEYOND_DOUBT
-    }
+    late = {timeline.gauge_files[trait.own[0]]: trait.size for trait in undone_traits(traits)}
     return tuple(_moved(digest, late.get(digest.file, 0.0)) for digest in digests) if late else None
 
 
