@@ -76,6 +76,8 @@ class Judged:
         Under the leading explanation, in the spell where the error is most probably outside. [Pa]
     unchecked_because : str
         What leaves the pressure there open, as the end of a sentence; empty where the gauge is checked.
+    spell : int
+        Index of that spell in the model; −1 where the gauge gave no reading.
     """
 
     verdict: Verdict
@@ -84,6 +86,7 @@ class Judged:
     u95_pa: float
     tolerance_pa: float
     unchecked_because: str = ""
+    spell: int = -1
 
 
 def own_inputs(model: Model, gauge: int) -> tuple[NDArray[np.int64], Array]:
@@ -135,8 +138,8 @@ def own_error(model: Model, explanation: Explanation, gauge: int) -> OwnError | 
     if any(frame.marks[i].spoils and gauge in frame.marks[i].own for i in explanation.chosen):
         return _error_of_spoilt(model, explanation, gauge, columns, widening)
     curve = frame.linear.calibration[np.ix_(rows, columns)]
-    widened = _Widened(frame, columns, widening)
-    weights, mean_pa, covariance = _error_by_size(frame, explanation.chosen, gauge, rows, curve, widened)
+    by_size = error_by_size(frame, explanation.chosen, gauge, rows, curve, Widened(frame, columns, widening))
+    weights, mean_pa, covariance = by_size.weights, by_size.mean_pa, by_size.covariance_pa2
     noun = model.layout.job.gauges[gauge]
     perfect = np.array([frame.linear.states[s].reading_pa[gauge] for s in spells])
     tolerance = np.array([noun.tolerance_at(float(p)) for p in perfect])
@@ -184,7 +187,7 @@ def _error_of_spoilt(
     )
 
 
-class _Widened:
+class Widened:
     """Products in white space once some inputs are doubted more: a small update of the inverse covariance.
 
     With ``V = 1`` in white space and columns ``C`` of the added doubt, ``(1 + C Cᵀ)⁻¹ = 1 − C (1 + CᵀC)⁻¹ Cᵀ``.
@@ -198,15 +201,52 @@ class _Widened:
         self.own = shared
         self.prior_variance = widening**2
 
+    def inverse(self, right: Array) -> Array:
+        """``V'⁻¹ right``."""
+        return np.asarray(right - self._added @ (self._middle @ (self._added.T @ right)))
+
     def product(self, left: Array, right: Array) -> Array:
         """``leftᵀ V'⁻¹ right``."""
         return np.asarray(left.T @ right - (left.T @ self._added) @ self._middle @ (self._added.T @ right))
 
 
-def _error_by_size(
-    frame: Frame, chosen: Sequence[int], gauge: int, rows: NDArray[np.int64], curve: Array, widened: _Widened
-) -> tuple[Array, Array, Array]:
-    """Weights of the sizes of the set's first free cause, the error's mean at each, and its covariance.
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ErrorBySize:
+    """A gauge's own error at each size of the first cause of a set whose size is in doubt.
+
+    Parameters
+    ----------
+    free : tuple of int
+        Marks whose size is in doubt: the gauge's own first.
+    weights : ndarray, shape (sizes,)
+        Of the sizes of the first; one where there is none. [-]
+    mean_pa : ndarray, shape (sizes, rows)
+        [Pa]
+    known_pa2 : ndarray, shape (rows, rows)
+        Covariance with every size known. [Pa²]
+    slope_pa : ndarray, shape (further, rows)
+        What a unit of each further size does to the error. [Pa]
+    spread : ndarray, shape (further, further)
+        Covariance of the further sizes, the first known.
+    """
+
+    free: tuple[int, ...]
+    weights: Array
+    mean_pa: Array
+    known_pa2: Array
+    slope_pa: Array
+    spread: Array
+
+    @property
+    def covariance_pa2(self) -> Array:
+        """Covariance at any one size of the first, shape (rows, rows). [Pa²]"""
+        return np.asarray(self.known_pa2 + self.slope_pa.T @ self.spread @ self.slope_pa)
+
+
+def error_by_size(
+    frame: Frame, chosen: Sequence[int], gauge: int, rows: NDArray[np.int64], curve: Array, widened: Widened
+) -> ErrorBySize:
+    """A gauge's own error at each size of the set's first free cause.
 
     The first free cause is the gauge's own where it has one; further ones are taken as normal about their best size.
     """
@@ -225,10 +265,14 @@ def _error_by_size(
     own = np.diag(variance) - variance[:, None] * widened.product(widened.own, widened.own) * variance
     covariance = curve @ own @ curve.T
     base = base + gain[:, 0]
+    slope: Array = np.zeros((0, rows.size))
+    spread: Array = np.zeros((0, 0))
     if not free:
-        return np.ones(1), base[None, :], covariance
+        return ErrorBySize(
+            free=(), weights=np.ones(1), mean_pa=base[None, :], known_pa2=covariance, slope_pa=slope, spread=spread
+        )
     # what a unit of each size does to the estimate of the error
-    slope = (effect.T - gain[:, 1:]).T
+    slope = np.asarray((effect.T - gain[:, 1:]).T)
     gram = widened.product(white, white)
     gram[np.diag_indices_from(gram)] = np.maximum(np.diag(gram), 1e-18)
     product = widened.product(white, residual[:, None])[:, 0]
@@ -238,11 +282,17 @@ def _error_by_size(
     mean = base[None, :] + posterior.sizes[:, None] * slope[0][None, :]
     if len(free) > 1:
         most = np.array([marks[i].prior.most for i in free[1:]])
-        spread = np.linalg.inv(gram[1:, 1:] + np.diag(1.0 / most**2))
+        spread = np.asarray(np.linalg.inv(gram[1:, 1:] + np.diag(1.0 / most**2)))
         centre = (product[1:][None, :] - posterior.sizes[:, None] * gram[1:, 0][None, :]) @ spread
         mean = mean + centre @ slope[1:]
-        covariance = covariance + slope[1:].T @ spread @ slope[1:]
-    return posterior.weights, mean, covariance
+    return ErrorBySize(
+        free=tuple(free),
+        weights=posterior.weights,
+        mean_pa=mean,
+        known_pa2=covariance,
+        slope_pa=slope[1:],
+        spread=spread,
+    )
 
 
 def judge_gauge(model: Model, posterior: Posterior, gauge: int) -> Judged:
@@ -283,6 +333,7 @@ def judge_gauge(model: Model, posterior: Posterior, gauge: int) -> Judged:
         u95_pa=2.0 * float(leading.sd_pa[worst]),
         tolerance_pa=noun.tolerance_at(float(state.reading_pa[gauge])),
         unchecked_because=why_unchecked(model, posterior, gauge, int(spells[worst])) if unchecked else "",
+        spell=int(spells[worst]),
     )
 
 
