@@ -10,9 +10,9 @@ from numpy.typing import NDArray
 
 from headledger.diagnosis.budget import OWN_CALIBRATION, InputKind, UncertainInput, instrument_of
 from headledger.diagnosis.estimate import Linear, Model
+from headledger.diagnosis.own_error import ErrorBySize, Widened, error_by_size, own_inputs, prediction
 from headledger.diagnosis.result import BudgetShare
 from headledger.diagnosis.search import Explanation
-from headledger.diagnosis.verdicts import ErrorBySize, Widened, error_by_size, own_inputs
 from headledger.diagnosis.wording import NOTHING_MEASURES, SCATTER, THE_REST, class_words, size_words, source_words
 
 Array = NDArray[np.float64]
@@ -93,7 +93,7 @@ def variance_by_source(model: Model, explanation: Explanation, gauge: int, spell
     at = int(np.flatnonzero(spells == spell)[0])
     columns, widening = own_inputs(frame.linear.model, gauge)
     if any(frame.marks[i].spoils and gauge in frame.marks[i].own for i in explanation.chosen):
-        return _of_spoilt(explanation, gauge, rows, at, columns)
+        return _of_spoilt(explanation, gauge, at)
     curve = frame.linear.calibration[np.ix_(rows, columns)]
     widened = Widened(frame, columns, widening)
     weights = widened.inverse(widened.own @ (widened.prior_variance * curve[at]))
@@ -121,25 +121,16 @@ def _of_sizes(by_size: ErrorBySize, at: int) -> list[tuple[int, float]]:
     return list(zip(by_size.free, [first, *further.tolist()], strict=True))
 
 
-def _of_spoilt(
-    explanation: Explanation, gauge: int, rows: NDArray[np.int64], at: int, columns: NDArray[np.int64]
-) -> dict[str, float]:
+def _of_spoilt(explanation: Explanation, gauge: int, at: int) -> dict[str, float]:
     """The same for a gauge whose readings say nothing: what it should read, from everything else. [Pa²]"""
     frame = explanation.frame
-    whitened = frame.linear.white.operator[:, rows]
-    weights = np.linalg.solve(whitened.T @ whitened, whitened.T)[at]
-    by_row = frame.linear.white.operator.T @ weights
-    by_input = frame.linear.white.shared.T @ weights
-    # a perfect reading is meant: without the gauge's own calibration and noise
-    by_input[columns] -= frame.linear.calibration[rows[at], columns]
-    others = by_row.copy()
-    others[rows] = 0.0
-    found = _by_source(frame.linear, gauge, by_input**2, by_row, others)
+    predicted = prediction(frame.linear, gauge)
+    found = _by_source(frame.linear, gauge, predicted.by_input[at] ** 2, predicted.by_row[at], predicted.others[at])
     for index in explanation.chosen:
         mark = frame.marks[index]
         if gauge not in mark.own and not mark.prior.is_point:
             size = frame.size(explanation.chosen, index)
-            found[size_words(*mark.key)] += size.sd**2 * float(weights @ frame.white[:, index]) ** 2
+            found[size_words(*mark.key)] += size.sd**2 * float(predicted.weights[at] @ frame.white[:, index]) ** 2
     return dict(found)
 
 

@@ -10,6 +10,7 @@ from headledger.diagnosis.contributions import budget_of
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import Finding, Key
 from headledger.diagnosis.grade import run_grades, tap_head_m
+from headledger.diagnosis.own_error import Expected, expected_readings
 from headledger.diagnosis.result import (
     SIZELESS,
     CauseFound,
@@ -23,7 +24,7 @@ from headledger.diagnosis.result import (
     Verdict,
 )
 from headledger.diagnosis.search import Posterior
-from headledger.diagnosis.verdicts import Expected, Judged, expected_readings
+from headledger.diagnosis.verdicts import Judged
 from headledger.diagnosis.wording import cause_sentence, verdict_sentence
 
 
