@@ -14,7 +14,7 @@ from headledger.diagnosis.findings import list_findings
 from headledger.diagnosis.priors import CountPrior
 from headledger.diagnosis.result import CauseKind, CheckResult, Evidence, Place
 from headledger.diagnosis.search import Explanation, Posterior, search
-from headledger.diagnosis.wording import against_sentence, misfit_sentence, odds_words
+from headledger.diagnosis.wording import against_sentence, beside_words, misfit_sentence, odds_words
 from tests.reference.worked_job import NOISE_SD, causes, marks
 
 from .test_time_causes import found as judged
@@ -108,7 +108,7 @@ def test_misfit_is_the_sum_of_squares_in_standard_deviations() -> None:
     assert evidence.count == 12
     assert evidence.misfit_before == pytest.approx(float(residual @ np.linalg.solve(covariance, residual)), rel=1e-3)
     assert evidence.misfit_after == pytest.approx(float(left @ np.linalg.solve(covariance, left)), rel=2e-3)
-    assert evidence.says == misfit_sentence(evidence.misfit_before, evidence.misfit_after, 12)
+    assert evidence.says == misfit_sentence(evidence.misfit_before, evidence.misfit_after, 12, "")
 
 
 def test_gauge_in_order_before_any_cause_is_off_by_its_deviation_about_one_time_in_three() -> None:
@@ -171,8 +171,8 @@ def test_findings_from_between_the_means_have_no_evidence(any_sample: CheckResul
         (math.log(40.0), "40 to 1"),
         (-math.log(3.2), "3.2 to 1"),
         (math.log(999.4), "999 to 1"),
-        (800.0, "over 1000 to 1"),
-        (-800.0, "over 1000 to 1"),
+        (800.0, "more than 1000 to 1"),
+        (-800.0, "more than 1000 to 1"),
     ],
 )
 def test_odds_words_name_the_larger_side_and_end_at_a_thousand(nats: float, words: str) -> None:
@@ -198,3 +198,12 @@ def test_against_nothing_in_its_stead_names_what_stays() -> None:
     nats = (math.log(40.0), 0.0)
     assert against_sentence(None, Place(), *nats, "").endswith("over nothing wrong.")
     assert against_sentence(None, Place(), *nats, "a leak at R1").endswith("over a leak at R1 alone.")
+
+
+def test_misfit_sentence_names_what_stands_beside() -> None:
+    leak = (CauseKind.LEAK, Place())
+    step = (CauseKind.STEP, PT_C)
+    assert beside_words([step, leak]) == beside_words([leak, step]) == "a leak and a step at PT-C"
+    assert misfit_sentence(84.2, 11.4, 18, "a leak") == (
+        "Misfit 84 → 11 over 18 readings with it and a leak (sum of squares, in standard deviations)."
+    )

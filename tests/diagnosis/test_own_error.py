@@ -30,7 +30,7 @@ def test_expected_reading_of_a_stuck_gauge_has_the_doubt_of_all_other_rows() -> 
     whole = np.hstack([unknowns, linear.calibration])
     others = np.setdiff1d(np.arange(linear.row_count), rows)
     stacked = np.vstack([whole[others] / noise[others, None], np.eye(whole.shape[1])])
-    upper = np.linalg.qr(stacked, mode="r")
+    upper = np.asarray(np.linalg.qr(stacked, mode="r"))
     perfect = whole[rows].copy()
     columns, _ = own_inputs(linear.model, 1)
     perfect[:, unknowns.shape[1] + columns] = 0.0

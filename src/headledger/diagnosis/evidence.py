@@ -13,7 +13,7 @@ from headledger.diagnosis.findings import Finding, Key
 from headledger.diagnosis.report import pieces_by_spell
 from headledger.diagnosis.result import Against, CauseKind, Evidence, Place, Residual
 from headledger.diagnosis.search import Explanation, Posterior
-from headledger.diagnosis.wording import against_sentence, kind_words, misfit_sentence, place_words
+from headledger.diagnosis.wording import against_sentence, beside_words, misfit_sentence
 
 Array = NDArray[np.float64]
 
@@ -75,7 +75,7 @@ def evidence_of(model: Model, posterior: Posterior, findings: Sequence[Finding])
                 misfit_before=before.misfit,
                 misfit_after=after.misfit,
                 count=count,
-                says=misfit_sentence(before.misfit, after.misfit, count),
+                says=misfit_sentence(before.misfit, after.misfit, count, _beside(finding)),
             )
         )
     return tuple(found)
@@ -84,6 +84,11 @@ def evidence_of(model: Model, posterior: Posterior, findings: Sequence[Finding])
 def _is_weighed(finding: Finding) -> bool:
     """Whether a finding is part of its explanation: what is seen between the means, or follows from them, is not."""
     return (finding.kind, finding.place) in finding.explanation.keys
+
+
+def _beside(finding: Finding) -> str:
+    """What else the explanation of a finding holds, in words."""
+    return beside_words(finding.explanation.keys - {(finding.kind, finding.place)})
 
 
 def _best_by_keys(posterior: Posterior) -> dict[frozenset[Key], Explanation]:
@@ -107,8 +112,7 @@ def _against(finding: Finding, best: dict[frozenset[Key], Explanation]) -> tuple
     without = best.get(rest)
     if without is None:
         rest, without = frozenset(), best[frozenset()]
-    beside = " and ".join(f"{kind_words(kind)} at {place_words(place)}" for kind, place in sorted(rest, key=str))
-    return (*found, _held_against(held, without, None, Place(), beside))
+    return (*found, _held_against(held, without, None, Place(), beside_words(rest)))
 
 
 def _instead(held: Explanation, own: Key, rival: Key, best: dict[frozenset[Key], Explanation]) -> Explanation | None:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from datetime import datetime
 from typing import TYPE_CHECKING
 from zoneinfo import ZoneInfo
@@ -143,17 +143,12 @@ def size_words(kind: CauseKind, place: Place) -> str:
     return f"size of the {words} {'in' if kind in _IN_A_RUN else 'at'} {place_words(place)}"
 
 
-def budget_sentence(budget: Sequence[BudgetShare]) -> str:
+def budget_sentence(tag: str, budget: Sequence[BudgetShare]) -> str:
     """Where a gauge's uncertainty comes from, in one sentence; empty where nothing is known of it."""
     if not budget:
         return ""
-    parts = ", ".join(f"{share.what} {share_words(share)}" for share in budget)
-    return f"Its uncertainty comes from {parts} (of the variance)."
-
-
-def share_words(share: BudgetShare) -> str:
-    """A share of a variance."""
-    return "under 1 %" if share.percent < 1.0 else f"{share.percent:.0f} %"
+    parts = ", ".join(f"{share.what} {percent(share.percent / 100.0)}" for share in budget)
+    return f"{tag}: its uncertainty comes, by share of the variance, from {parts}."
 
 
 MOST_ODDS = 1000.0
@@ -167,7 +162,7 @@ def odds_words(nats: float) -> str:
     """Odds of a logarithm, the larger side first."""
     odds = math.exp(min(abs(nats), 2.0 * math.log(MOST_ODDS)))
     if odds > MOST_ODDS:
-        return f"over {MOST_ODDS:.0f} to 1"
+        return f"more than {MOST_ODDS:.0f} to 1"
     return f"{odds:.0f} to 1" if odds >= 9.95 else f"{odds:.2g} to 1"
 
 
@@ -200,9 +195,16 @@ def against_sentence(kind: CauseKind | None, place: Place, evidence_nats: float,
     return f"The readings favour {favoured}{beforehand}."
 
 
-def misfit_sentence(before: float, after: float, count: int) -> str:
-    """How much better the readings fit with a finding."""
-    return f"Misfit {before:.0f} → {after:.0f} over {count} readings (sum of squares, in standard deviations)."
+def misfit_sentence(before: float, after: float, count: int, beside: str) -> str:
+    """How much better the readings fit with a finding, and with what else its explanation holds."""
+    given = f" with it and {beside}" if beside else ""
+    return f"Misfit {before:.0f} → {after:.0f} over {count} readings{given} (sum of squares, in standard deviations)."
+
+
+def beside_words(causes: Iterable[tuple[CauseKind, Place]]) -> str:
+    """Causes that stand beside one in an explanation, always in one order; empty where there is none."""
+    words = sorted(f"{kind_words(kind)} at {place_words(place)}" for kind, place in causes)
+    return " and ".join(words).replace(" at the whole job", "")
 
 
 def trait_statement(model: Model, kind: CauseKind, place: Place, size: float) -> str:

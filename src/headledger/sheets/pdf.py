@@ -134,6 +134,7 @@ def _gauge_page(result: CheckResult, gauge: GaugeFound, ways: Sequence[Way], roo
         identity(page, width),
         words("Own error, as found", SECTION),
         table(page.error_head, [page.error], [width / 6.0] * 6, right=range(6)),
+        *([words(page.budget, FINE)] if page.budget else []),
         words("Spell by spell", SECTION),
         table(
             page.spell_head,
@@ -146,7 +147,7 @@ def _gauge_page(result: CheckResult, gauge: GaugeFound, ways: Sequence[Way], roo
     trend = trend_picture(result, gauge)
     if trend is not None:
         story += [Spacer(1, 3), PictureOnPaper(trend, width, room.trend)]
-    story += [words("Causes and what they cannot be told from", SECTION), *finding_lines(page.findings)]
+    story += [words("Causes and what they cannot be told from", SECTION), *finding_lines(page.findings, page.behind)]
     story.append(
         KeepTogether(
             [

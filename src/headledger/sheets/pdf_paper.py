@@ -48,7 +48,7 @@ class Room:
 
 
 ROOMS: dict[Paper, Room] = {
-    Paper.A4: Room(page=A4, line=45.0 * mm, trend=28.0 * mm),
+    Paper.A4: Room(page=A4, line=41.0 * mm, trend=25.0 * mm),
     Paper.LETTER: Room(page=LETTER, line=32.0 * mm, trend=19.0 * mm),
 }
 

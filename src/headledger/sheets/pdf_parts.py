@@ -130,14 +130,15 @@ def answer_table(answers: Sequence[tuple[str, str]], width: float) -> Table:
     )
 
 
-def finding_lines(findings: Sequence[tuple[str, str]]) -> list[Flowable]:
-    """Findings with their sentences."""
+def finding_lines(findings: Sequence[tuple[str, str]], behind: Sequence[str] = ()) -> list[Flowable]:
+    """Findings with their sentences and, in fine print, what they rest on."""
     if not findings:
         return [words("No cause has weight.")]
     lines: list[Flowable] = []
-    for label, sentence in findings:
+    for index, (label, sentence) in enumerate(findings):
         lines += [words(label, STRONG)] if label else []
         lines.append(words(sentence))
+        lines += [words(behind[index], FINE)] if index < len(behind) and behind[index] else []
     return lines
 
 

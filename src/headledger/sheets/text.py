@@ -14,10 +14,12 @@ from rich.table import Table
 from rich.text import Text
 
 from headledger.diagnosis.result import CauseFound, CheckResult, GaugeFound, Verdict
+from headledger.diagnosis.wording import budget_sentence
 from headledger.sheets.columns import error_columns, flows_line
 from headledger.sheets.headline import cause_label, check_worth, headline, told_causes
 from headledger.sheets.marks import CAUTIONS, by_trouble, verdict_label
 from headledger.sheets.numbers import clock_range, percent
+from headledger.sheets.why import RESIDUAL_HEAD, finding_title, moved, with_evidence
 
 _STYLES = {
     Verdict.FAIL: "bold red",
@@ -33,7 +35,9 @@ _TEXT_AS_IT_IS: dict[str, Any] = {"highlight": False, "markup": False, "emoji": 
 _PLAIN_WIDTH = 80
 
 
-def write_report(result: CheckResult, stream: TextIO, *, width: int | None = None, color: bool = True) -> None:
+def write_report(
+    result: CheckResult, stream: TextIO, *, width: int | None = None, color: bool = True, why: bool = False
+) -> None:
     """Write the report.
 
     Parameters
@@ -44,16 +48,20 @@ def write_report(result: CheckResult, stream: TextIO, *, width: int | None = Non
         Columns; the terminal's, or 80 where there is none.
     color : bool
         False prints no colour even on a terminal; a stream that is no terminal never gets any.
+    why : bool
+        Print the numbers behind every finding and every gauge's uncertainty too.
     """
     if stream.isatty():
-        _print_report(result, Console(file=stream, width=width, no_color=None if color else True, **_TEXT_AS_IT_IS))
+        console = Console(file=stream, width=width, no_color=None if color else True, **_TEXT_AS_IT_IS)
+        _print_report(result, console, why=why)
         return
     buffer = StringIO()
-    _print_report(result, Console(file=buffer, width=width or _PLAIN_WIDTH, no_color=True, **_TEXT_AS_IT_IS))
+    console = Console(file=buffer, width=width or _PLAIN_WIDTH, no_color=True, **_TEXT_AS_IT_IS)
+    _print_report(result, console, why=why)
     stream.writelines(line.rstrip() + "\n" for line in buffer.getvalue().splitlines())
 
 
-def _print_report(result: CheckResult, console: Console) -> None:
+def _print_report(result: CheckResult, console: Console, *, why: bool) -> None:
     zone = ZoneInfo(result.job.timezone)
     console.print(Text(result.job.title, style="bold"))
     if result.job.site_name:
@@ -63,6 +71,10 @@ def _print_report(result: CheckResult, console: Console) -> None:
     _print_section(console, "Gauges", [_gauge_table(by_trouble(result.gauges))])
     _print_section(console, "Why", _why_lines(result.gauges))
     _print_section(console, "Findings", _finding_lines(result.causes))
+    if why:
+        for cause in with_evidence(result.causes):
+            _print_section(console, f"Behind {finding_title(cause)}", _evidence_parts(result, cause))
+        _print_section(console, "Where each gauge's uncertainty comes from", _budget_lines(result.gauges))
     _print_section(console, "Next checks", _check_lines(result))
     _print_section(console, "Not used from the logs", _reject_lines(result))
     _print_section(console, "Taken as given", _remark_lines(result.remarks))
@@ -149,6 +161,28 @@ def _finding_lines(causes: Iterable[CauseFound]) -> Iterator[Table]:
         yield _hanging(Text(percent(cause.probability).rjust(6), style="bold"), body, label_width=6)
     if rest:
         yield _hanging("", Text(rest), label_width=6)
+
+
+def _evidence_parts(result: CheckResult, cause: CauseFound) -> Iterator[Table | Text]:
+    if cause.evidence is None:
+        return
+    for against in cause.evidence.against:
+        yield _hanging("-", Text(against.says))
+    yield _hanging("-", Text(cause.evidence.says))
+    told = moved(result, cause)
+    if told.rows:
+        table = _plain_table(*RESIDUAL_HEAD, right=frozenset({"Spell", "No cause", "With it", "± u95"}))
+        for row in told.rows:
+            table.add_row(*(Text(cell, no_wrap=True) for cell in row))
+        yield table
+    if told.rest:
+        yield Text(told.rest)
+
+
+def _budget_lines(gauges: Iterable[GaugeFound]) -> Iterator[Table]:
+    for gauge in by_trouble(gauges):
+        if gauge.budget:
+            yield _hanging("-", Text(budget_sentence(gauge.tag, gauge.budget)))
 
 
 def _check_lines(result: CheckResult) -> Iterator[Table | Text]:
