@@ -19,6 +19,7 @@ from headledger.sheets.marks import CAUTIONS
 from headledger.sheets.paths import way_past, ways_through
 from headledger.tui.gauge_search import GaugeSearch
 from headledger.tui.screens.gauge import GaugeScreen
+from headledger.tui.screens.why import WhyScreen
 from headledger.tui.widgets.answers import Answers
 from headledger.tui.widgets.findings_list import FindingsList
 from headledger.tui.widgets.gauge_detail import GaugeDetail
@@ -55,6 +56,7 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
 - **w** draws another way through the piping
 - **a** shows the answers in full, or a line each
 - **f** shows the findings, what the data cannot tell them from, and the next checks, and leads back; **g** leads to the gauges
+- **y** shows why: what a finding rests on, and where the uncertainty of the chosen gauge comes from
 - **r** checks the job again, with what is in its folder now
 """
     COMMANDS: ClassVar = Screen.COMMANDS | {GaugeSearch}
@@ -66,6 +68,7 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
         Binding("f", "findings", "Findings", id="findings"),
         Binding("g", "gauges", "Gauges", id="gauges", show=False),
         Binding("enter", "open", "Gauge", id="open", priority=True),
+        Binding("y", "why", "Why", id="why"),
         Binding("r", "again", "Again", id="again", tooltip="Check the job again, with what is in its folder now"),
     ]
 
@@ -170,6 +173,11 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
         """Open the page of the chosen gauge."""
         if self._tag:
             self.open_gauge(self._tag)
+
+    def action_why(self) -> None:
+        """Show what the findings rest on, those of the chosen gauge first."""
+        if self._tag:
+            self.app.push_screen(WhyScreen(self.result, self._tag))
 
     def action_again(self) -> None:
         """Check the job anew."""
