@@ -8,15 +8,19 @@ from pathlib import Path
 import numpy as np
 
 from headledger.diagnosis.result import (
+    Against,
+    BudgetShare,
     CauseFound,
     CauseKind,
     CheckResult,
+    Evidence,
     FlowFound,
     GaugeFound,
     GaugeSpell,
     GradeStep,
     InputFile,
     Place,
+    Residual,
     Rival,
     RunGrade,
     SpellFound,
@@ -37,6 +41,52 @@ METRE = Unit("m", Dimension.LENGTH, 1.0)
 # 2026-03-02 08:00 UTC
 EIGHT_O_CLOCK_S = 1_772_438_400.0
 
+BUDGET = (
+    BudgetShare(what="class of PT-1", percent=61.0),
+    BudgetShare(what="elevation of S4 [survey]", percent=38.2),
+    BudgetShare(what="the rest", percent=0.8),
+)
+
+
+def left_at(tag: str, spell: int, before_pa: float, after_pa: float | None) -> Residual:
+    """A reading off by so much with no cause and with one, give or take 1 500 Pa."""
+    after_sd_pa = None if after_pa is None else 1_500.0
+    return Residual(
+        tag=tag, spell=spell, before_pa=before_pa, after_pa=after_pa, sd_before_pa=1_500.0, sd_after_pa=after_sd_pa
+    )
+
+
+SHIFT_EVIDENCE = Evidence(
+    against=(
+        Against(
+            kind=CauseKind.WRONG_ELEVATION,
+            place=Place(gauge="PT-3"),
+            evidence_nats=3.4657,
+            prior_nats=0.0,
+            says="The readings favour it 32 to 1 over a wrong elevation at PT-3.",
+        ),
+        Against(
+            kind=None,
+            place=Place(),
+            evidence_nats=98.0,
+            prior_nats=-5.0,
+            says="The readings favour it more than 1000 to 1 over nothing wrong; beforehand it was the less likely, 148 to 1.",
+        ),
+    ),
+    residuals=(
+        left_at("PT-1", 1, 400.0, 300.0),
+        left_at("PT-1", 2, -500.0, -400.0),
+        left_at("PT-2", 1, -7_000.0, -200.0),
+        left_at("PT-3", 1, 21_000.0, 0.0),
+        left_at("PT-3", 2, 20_500.0, None),
+        left_at("PT-4", 2, -3_500.0, 4_000.0),
+    ),
+    misfit_before=208.4,
+    misfit_after=11.2,
+    count=18,
+    says="Misfit 208 → 11 over 18 readings (sum of squares, in standard deviations).",
+)
+
 ZERO_SHIFT = CauseFound(
     kind=CauseKind.ZERO_SHIFT,
     place=Place(gauge="PT-3"),
@@ -47,6 +97,7 @@ ZERO_SHIFT = CauseFound(
     accepted=True,
     rivals=(Rival(kind=CauseKind.WRONG_ELEVATION, place=Place(gauge="PT-3"), probability=0.03),),
     says="PT-3 reads 0.21 bar high at every flow.",
+    evidence=SHIFT_EVIDENCE,
 )
 BLOCKAGE = CauseFound(
     kind=CauseKind.BLOCKAGE,
@@ -59,6 +110,22 @@ BLOCKAGE = CauseFound(
     rivals=(Rival(kind=CauseKind.SPAN_ERROR, place=Place(gauge="PT-4"), probability=0.42),),
     says="Run R2 loses 0.31 bar more than the 0.12 bar expected at 36 m3/h. "
     "Or it is a span error at PT-4 (42 %): these readings cannot tell which.",
+    evidence=Evidence(
+        against=(
+            Against(
+                kind=CauseKind.SPAN_ERROR,
+                place=Place(gauge="PT-4"),
+                evidence_nats=0.1,
+                prior_nats=0.0,
+                says="The readings do not tell it from a span error at PT-4, and beforehand neither was likelier.",
+            ),
+        ),
+        residuals=(left_at("PT-4", 1, 0.0, 0.0), left_at("PT-4", 2, -11_000.0, -300.0)),
+        misfit_before=208.4,
+        misfit_after=10.9,
+        count=18,
+        says="Misfit 208 → 11 over 18 readings with it and a zero shift at PT-3 (sum of squares, in standard deviations).",
+    ),
 )
 
 
@@ -154,6 +221,7 @@ def found_gauge(tag: str, station: str, verdict: Verdict, **changes: object) -> 
         u95_pa=3_000.0,
         tolerance_pa=6_000.0,
         spells=spells,
+        budget=BUDGET,
     )
     return replace(gauge, **changes)  # type: ignore[arg-type]
 
@@ -226,6 +294,7 @@ def troubled_result() -> CheckResult:
         error_pa=float("nan"),
         u95_pa=float("nan"),
         spells=(GaugeSpell(id=1, reading_pa=310_000.0, expected_pa=None, u95_pa=None),),
+        budget=(),
         why="Nothing else in the data determines the pressure at PT-5.",
     )
     sound = sound_result()

@@ -51,6 +51,16 @@ def test_check_of_trouble_prints_the_report_and_is_1(
     assert calls[0][0] == tmp_path
 
 
+def test_check_asked_why_prints_the_numbers_behind_the_findings(
+    answer: Answer, troubled_result: CheckResult, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+):
+    answer(troubled_result)
+    assert main(["check", str(tmp_path), "--why"]) == 1
+    assert "Behind 96 %  zero-shift at PT-3 (accepted)" in capsys.readouterr().out
+    assert main(["check", str(tmp_path)]) == 1
+    assert "Behind" not in capsys.readouterr().out
+
+
 def test_check_of_a_sound_job_is_0_and_silent_on_stderr(
     answer: Answer, sound_result: CheckResult, tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ):

@@ -9,9 +9,10 @@ import pytest
 
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.layout import Layout
+from headledger.diagnosis.own_error import expected_readings
 from headledger.diagnosis.result import Verdict
 from headledger.diagnosis.search import search
-from headledger.diagnosis.verdicts import decide, expected_readings, judge_gauge
+from headledger.diagnosis.verdicts import decide, judge_gauge
 from headledger.plant.job import CheckSettings, DecisionRule
 from headledger.plant.runs import RunState
 

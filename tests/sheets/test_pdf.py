@@ -14,7 +14,8 @@ from headledger.diagnosis.result import CheckResult, Verdict
 from headledger.sheets.columns import flow_words
 from headledger.sheets.content import HEADING, NOT_A_CERTIFICATE, fingerprint
 from headledger.sheets.marks import by_trouble
-from headledger.sheets.pdf import MARGIN, Paper, sheets_to_pdf
+from headledger.sheets.pdf import sheets_to_pdf
+from headledger.sheets.pdf_paper import MARGIN, Paper
 from tests.made_results import found_gauge
 from tests.outside_programs import needs
 from tests.sample_results import sample_result

@@ -21,7 +21,7 @@ class Terminal(io.StringIO):
         return True
 
 
-def report_of(result: CheckResult, **options: int) -> str:
+def report_of(result: CheckResult, **options: int | bool) -> str:
     stream = io.StringIO()
     write_report(result, stream, **options)  # type: ignore[arg-type]
     return stream.getvalue()
@@ -47,6 +47,24 @@ def test_report_of_trouble_answers_the_five_questions(troubled_result: CheckResu
     assert "What next? At PT-3: see to a zero shift" in report
     assert "Find out on site whether it is a blockage or a span error." in report
     assert "To check PT-5:" in report
+
+
+def test_report_asked_why_tells_odds_readings_and_budgets(troubled_result: CheckResult):
+    """PT-1 stays within chance before and after; PT-3 is off by 0.21 bar, and in spell 2 says nothing any more."""
+    plain, asked = report_of(troubled_result), report_of(troubled_result, why=True)
+    behind = section(asked, "Behind 96 %  zero-shift at PT-3 (accepted)")
+    rows = [" ".join(line.split()) for line in behind.splitlines() if line.strip().startswith("PT-")]
+    assert rows == [
+        "PT-2 1 -0.070 0.030 ▲ off -0.002 0.030 ✓ fits bar",
+        "PT-3 1 +0.210 0.030 ▲ off 0.000 0.030 ✓ fits bar",
+        "PT-3 2 +0.205 0.030 ▲ off – – – spoilt bar",
+        "PT-4 2 -0.035 0.030 ▲ off +0.040 0.030 ▲ off bar",
+    ]
+    assert "- The readings favour it 32 to 1 over a wrong elevation at PT-3." in behind
+    assert "2 readings fit with no cause and with it." in behind
+    assert "elevation of S4 [survey] 38 %" in unwrapped(asked)
+    before, after = asked.index("\nBehind"), asked.index("\nNot used from the logs")
+    assert asked[:before] + asked[after:] == plain
 
 
 def test_report_of_a_sound_job_says_no(sound_result: CheckResult):

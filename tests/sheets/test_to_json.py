@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from dataclasses import replace
+from pathlib import Path
 
 import pytest
 
@@ -30,11 +31,53 @@ def test_result_file_of_a_troubled_job_has_the_promised_keys(troubled_result: Ch
     assert set(written) >= {"spells", "clean_probability", "gauges", "causes", "next_checks", "rejects"}
     assert set(written["gauges"][0]) == {
         "tag", "station", "unit", "verdict", "outside_probability", "error", "u95", "tolerance", "spells", "causes",
-        "given", "why",
+        "given", "why", "budget",
     }  # fmt: skip
     assert set(written["causes"][0]) == {
         "kind", "at", "size", "u95", "unit", "start", "probability", "accepted", "rivals", "says",
+        "evidence",
     }  # fmt: skip
+
+
+def test_budget_and_evidence_are_written_in_the_unit_of_the_gauge(troubled_result: CheckResult):
+    """A bar is 100 000 Pa; a finding that spoils a reading leaves no number after."""
+    written = result_to_json(troubled_result)
+    assert written["gauges"][0]["budget"][0] == {"what": "class of PT-1", "percent": 61.0}
+    assert written["gauges"][4]["budget"] == []
+    evidence = written["causes"][0]["evidence"]
+    assert evidence["against"][0] == {
+        "kind": "wrong-elevation",
+        "at": {"gauge": "PT-3"},
+        "evidence_nats": 3.4657,
+        "prior_nats": 0.0,
+        "says": "The readings favour it 32 to 1 over a wrong elevation at PT-3.",
+    }
+    assert (evidence["against"][1]["kind"], evidence["against"][1]["at"]) == ("none", {})
+    assert evidence["residuals"][3] == {
+        "gauge": "PT-3", "spell": 1, "before": 0.21, "after": 0.0, "sd_before": 0.015, "sd_after": 0.015, "unit": "bar",
+    }  # fmt: skip
+    assert (evidence["residuals"][4]["after"], evidence["residuals"][4]["sd_after"]) == (None, None)
+    assert evidence["misfit"] == {
+        "before": 208.4,
+        "after": 11.2,
+        "count": 18,
+        "says": "Misfit 208 → 11 over 18 readings (sum of squares, in standard deviations).",
+    }
+
+
+def test_finding_without_evidence_is_written_as_null(troubled_result: CheckResult):
+    bare = replace(troubled_result, causes=(cause_of(CauseKind.NOISY, None, None),))
+    assert result_to_json(bare)["causes"][0]["evidence"] is None
+
+
+def test_every_key_of_budget_and_evidence_is_described_for_contributors(troubled_result: CheckResult):
+    """The table of the result file in DEVELOPERS.md names each of them."""
+    described = (Path(__file__).parents[2] / "DEVELOPERS.md").read_text(encoding="utf-8").split("## The result file")[1]
+    evidence = result_to_json(troubled_result)["causes"][0]["evidence"]
+    rows = [evidence["against"][0], evidence["residuals"][0], evidence["misfit"]]
+    rows.append(result_to_json(troubled_result)["gauges"][0]["budget"][0])
+    for key in {"budget", "evidence", *evidence, *(key for row in rows for key in row)}:
+        assert f"`{key}`" in described, key
 
 
 def test_gauge_numbers_are_in_the_unit_of_the_gauge(troubled_result: CheckResult):

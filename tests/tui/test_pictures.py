@@ -46,6 +46,13 @@ def test_gauge_page_looks_as_it_did(
     assert snap_compare(app_with(troubled_result), run_before=presses("enter"), terminal_size=size)
 
 
+@SIZES
+def test_why_screen_looks_as_it_did(
+    troubled_result: CheckResult, snap_compare: Callable[..., bool], size: tuple[int, int]
+):
+    assert snap_compare(app_with(troubled_result), run_before=presses("y"), terminal_size=size)
+
+
 def test_findings_in_place_of_the_picture_look_as_they_did(
     troubled_result: CheckResult, snap_compare: Callable[..., bool]
 ):

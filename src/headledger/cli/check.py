@@ -26,11 +26,14 @@ if TYPE_CHECKING:
     multiple=True,
     help='What was found on site, such as "zero-check PT-7 = 0.01 bar" or "open-strainer STR-1 = yes"; may be given often.',
 )
+@click.option("--why", is_flag=True, help="Print the numbers behind every finding and every uncertainty too.")
 @click.option(
     "--sight", is_flag=True, help="Report also how small a trouble these readings could have shown, and where."
 )
 @click.option("-q", "--quiet", is_flag=True, help="No report and no progress: the exit status is the answer.")
-def check(job: str, json_path: str | None, no_color: bool, answers: tuple[str, ...], sight: bool, quiet: bool) -> int:
+def check(
+    job: str, json_path: str | None, no_color: bool, answers: tuple[str, ...], why: bool, sight: bool, quiet: bool
+) -> int:
     """Say which gauges of JOB can be believed.
 
     Exit status: 0 nothing is wrong; 1 something is; 2 the job or its logs cannot be used; 3 nothing can be checked;
@@ -52,7 +55,7 @@ def check(job: str, json_path: str | None, no_color: bool, answers: tuple[str, .
         from headledger.sheets.text import write_report
 
         with result_stream() as stream:
-            write_report(result, stream, color=not no_color, sight=sight)
+            write_report(result, stream, color=not no_color, why=why, sight=sight)
     _name_unchecked(result)
     return exit_code_of(result)
 

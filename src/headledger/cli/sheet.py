@@ -38,7 +38,8 @@ def sheet(job: str, output: str | None, csv_path: str | None, paper: str, quiet:
     refuse_bad_target(str(target), "--output")
     refuse_bad_target(csv_path, "--csv")
     from headledger.diagnosis.check import check_folder
-    from headledger.sheets.pdf import Paper, sheets_to_pdf
+    from headledger.sheets.pdf import sheets_to_pdf
+    from headledger.sheets.pdf_paper import Paper
 
     with ProgressLine(sys.stderr, shown=not quiet) as progress:
         result = check_folder(folder, on_progress=progress)

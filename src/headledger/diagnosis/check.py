@@ -11,6 +11,7 @@ from headledger.diagnosis.answers import Answer, answered
 from headledger.diagnosis.averages import spell_pieces
 from headledger.diagnosis.circulation import circulations
 from headledger.diagnosis.estimate import Model
+from headledger.diagnosis.evidence import evidence_of
 from headledger.diagnosis.findings import list_findings
 from headledger.diagnosis.fit import fit_of
 from headledger.diagnosis.layout import Layout
@@ -149,7 +150,10 @@ def check_job(
         spells=spells_found(model, posterior, findings),
         clean_probability=posterior.clean_probability * unseen * (1.0 - fit.unknown_probability),
         gauges=tuple(gauge_found(model, posterior, findings, gauge, one) for gauge, one in enumerate(judged)),
-        causes=tuple(cause_found(model, finding) for finding in findings),
+        causes=tuple(
+            cause_found(model, finding, evidence)
+            for finding, evidence in zip(findings, evidence_of(model, posterior, findings), strict=True)
+        ),
         rejects=tuple(reject for digest in digests for reject in digest.rejects),
         reject_count=sum(digest.reject_count for digest in digests),
         remarks=(*job.remarks, *timeline.remarks, *unread_spells(job, stretches), *circulations(model)),

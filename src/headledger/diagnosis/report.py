@@ -6,12 +6,15 @@ from collections.abc import Sequence
 
 import numpy as np
 
+from headledger.diagnosis.contributions import budget_of
 from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.findings import Finding, Key
 from headledger.diagnosis.grade import run_grades, tap_head_m
+from headledger.diagnosis.own_error import Expected, expected_readings
 from headledger.diagnosis.result import (
     SIZELESS,
     CauseFound,
+    Evidence,
     FlowFound,
     GaugeFound,
     GaugeSpell,
@@ -21,7 +24,7 @@ from headledger.diagnosis.result import (
     Verdict,
 )
 from headledger.diagnosis.search import Posterior
-from headledger.diagnosis.verdicts import Expected, Judged, expected_readings
+from headledger.diagnosis.verdicts import Judged
 from headledger.diagnosis.wording import cause_sentence, verdict_sentence
 
 
@@ -105,6 +108,7 @@ def gauge_found(
         causes=causes,
         given=given,
         why=verdict_sentence(noun, judged, [findings[i] for i in causes], [findings[i] for i in given]),
+        budget=budget_of(model, posterior.leading, gauge, judged.spell) if judged.spell >= 0 else (),
     )
 
 
@@ -140,7 +144,7 @@ def _gauge_spells(
     return tuple(rows)
 
 
-def cause_found(model: Model, finding: Finding) -> CauseFound:
+def cause_found(model: Model, finding: Finding, evidence: Evidence | None) -> CauseFound:
     """One finding as the result has it."""
     return CauseFound(
         kind=finding.kind,
@@ -153,4 +157,5 @@ def cause_found(model: Model, finding: Finding) -> CauseFound:
         accepted=finding.accepted,
         rivals=finding.rivals,
         says=cause_sentence(model, finding),
+        evidence=evidence,
     )

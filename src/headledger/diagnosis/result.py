@@ -198,6 +198,22 @@ class GaugeSpell:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class BudgetShare:
+    """What one source of doubt has in the variance of a gauge's error.
+
+    Parameters
+    ----------
+    what : str
+        The source in words.
+    percent : float
+        Of the variance; the shares of a gauge sum to 100. [%]
+    """
+
+    what: str
+    percent: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class GaugeFound:
     """The verdict on one gauge.
 
@@ -214,6 +230,8 @@ class GaugeFound:
     causes, given : tuple of int
         Indices into the causes of the result: at this gauge, and elsewhere where the verdict leans on them.
     why : str
+    budget : tuple of BudgetShare
+        Where `u95_pa` comes from, the largest share first; empty for a gauge without a reading.
     """
 
     tag: str
@@ -228,6 +246,7 @@ class GaugeFound:
     causes: tuple[int, ...] = ()
     given: tuple[int, ...] = ()
     why: str = ""
+    budget: tuple[BudgetShare, ...] = ()
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -237,6 +256,79 @@ class Rival:
     kind: CauseKind
     place: Place
     probability: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Against:
+    """A finding held against one thing that may stand in its stead.
+
+    Parameters
+    ----------
+    kind : CauseKind or None
+        None for nothing at all in its stead.
+    place : Place
+    evidence_nats : float
+        Log evidence of the best explanation that holds the finding, less that of the best with this in its stead. [nat]
+    prior_nats : float
+        The same of what the two are worth before any reading. [nat]
+    says : str
+        Both in words.
+    """
+
+    kind: CauseKind | None
+    place: Place
+    evidence_nats: float
+    prior_nats: float
+    says: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Residual:
+    """How far a gauge stands in a spell from what everything else says, without a finding and with it.
+
+    Parameters
+    ----------
+    tag : str
+    spell : int
+        Its `id`.
+    before_pa, sd_before_pa : float
+        With no cause, and what chance allows: everything else's doubt, the gauge's stated class and its noise. [Pa]
+    after_pa, sd_after_pa : float or None
+        The same with the finding's explanation and its effect taken off; None where the finding spoils the reading. [Pa]
+    """
+
+    tag: str
+    spell: int
+    before_pa: float
+    after_pa: float | None
+    sd_before_pa: float
+    sd_after_pa: float | None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Evidence:
+    """The numbers behind a finding.
+
+    Parameters
+    ----------
+    against : tuple of Against
+        Each rival, the most probable first, and at the end nothing in its stead.
+    residuals : tuple of Residual
+        Every gauge in every spell in which it reads.
+    misfit_before, misfit_after : float
+        Sum of squares of all data in their standard deviations, with no cause and with the finding's explanation. [-]
+    count : int
+        Data that it sums over: readings of gauges, meters and levels, by pieces of a spell, and loops.
+    says : str
+        The misfit in words.
+    """
+
+    against: tuple[Against, ...]
+    residuals: tuple[Residual, ...]
+    misfit_before: float
+    misfit_after: float
+    count: int
+    says: str = ""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -259,6 +351,8 @@ class CauseFound:
     rivals : tuple of Rival
     says : str
         The finding in words.
+    evidence : Evidence or None
+        The numbers behind it; None where it was not weighed against others by its marks on the spells' means.
     """
 
     kind: CauseKind
@@ -271,6 +365,7 @@ class CauseFound:
     start_s: float | None = None
     rivals: tuple[Rival, ...] = ()
     says: str = ""
+    evidence: Evidence | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

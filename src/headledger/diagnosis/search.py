@@ -64,6 +64,8 @@ class Explanation:
     frame : Frame
     log_weight : float
         Log of prior times evidence, on a scale common to all explanations of a search. [nat]
+    log_prior : float
+        What of it is prior. [nat]
     probability : float
         [-]
     """
@@ -71,7 +73,13 @@ class Explanation:
     chosen: tuple[int, ...]
     frame: Frame
     log_weight: float
+    log_prior: float = 0.0
     probability: float = 0.0
+
+    @property
+    def log_evidence(self) -> float:
+        """Log evidence, on a scale common to all explanations of a search. [nat]"""
+        return self.log_weight - self.log_prior
 
     def weighed(self, log_weight: float) -> Explanation:
         """The same explanation with another weight."""
@@ -160,9 +168,13 @@ def search(
         frame = full.only([index for index, mark in enumerate(full.marks) if mark.noise_factor == 1.0])
     if not stay:
         weighed = _weigh(frame, prior, should_stop)
-    explanations = [Explanation(chosen=chosen, frame=frame, log_weight=w) for chosen, w in weighed.items()]
+    log_priors = _log_priors(frame, prior, list(weighed))
+    explanations = [
+        Explanation(chosen=chosen, frame=frame, log_weight=weight, log_prior=log_priors[chosen])
+        for chosen, weight in weighed.items()
+    ]
     if not stay:
-        explanations = _at_own_solutions(model, explanations, prior, should_stop)
+        explanations = _at_own_solutions(model, explanations, should_stop)
     if whole and not (should_stop and should_stop()):
         explanations += _with_variants(model, frame, full, weighed, prior, should_stop)
     return Posterior(explanations=_normalised(explanations), frame=frame, other_kinds=prior.other_kinds)
@@ -262,13 +274,19 @@ def _weigh_variant(
     number = len(frame.marks)
     with_mark = make_frame(linear, [*frame.marks, mark])
     kinds = len({one.kind for one in full.marks}) + prior.other_kinds
-    own = float(np.log(mark.share / kinds / places)) + mark.log_jacobian
+    own = float(np.log(mark.share / kinds / places))
     scale = frame.log_evidence_of_none - base.log_evidence_of_none
     top = max(weighed.values())
+    kept = {chosen: weight for chosen, weight in weighed.items() if weight > top - KEPT_NATS}
+    log_priors = _log_priors(frame, further, list(kept))
     return [
-        Explanation(chosen=(*chosen, number), frame=with_mark, log_weight=weight + own + scale)
-        for chosen, weight in weighed.items()
-        if weight > top - KEPT_NATS
+        Explanation(
+            chosen=(*chosen, number),
+            frame=with_mark,
+            log_weight=weight + own + mark.log_jacobian + scale,
+            log_prior=log_priors[chosen] + own,
+        )
+        for chosen, weight in kept.items()
     ]
 
 
@@ -316,12 +334,7 @@ def _normalised(explanations: list[Explanation]) -> tuple[Explanation, ...]:
     weights = np.array([e.log_weight for e in explanations])
     total = float(log_sum(weights))
     ordered = sorted(explanations, key=lambda e: -e.log_weight)
-    return tuple(
-        Explanation(
-            chosen=e.chosen, frame=e.frame, log_weight=e.log_weight, probability=float(np.exp(e.log_weight - total))
-        )
-        for e in ordered
-    )
+    return tuple(replace(e, probability=float(np.exp(e.log_weight - total))) for e in ordered)
 
 
 def set_log_priors(shares: NDArray[np.float64], prior: CountPrior, sets: NDArray[np.int64]) -> Array:
@@ -339,6 +352,17 @@ def set_log_priors(shares: NDArray[np.float64], prior: CountPrior, sets: NDArray
 def set_log_prior(shares: NDArray[np.float64], prior: CountPrior, chosen: Sequence[int]) -> float:
     """Log prior of one set of marks."""
     return float(set_log_priors(shares, prior, np.array([chosen], dtype=np.int64))[0])
+
+
+def _log_priors(frame: Frame, prior: CountPrior, sets: Sequence[tuple[int, ...]]) -> dict[tuple[int, ...], float]:
+    """Log prior of every set of a list, those of one size in one sweep."""
+    shares = mark_shares(frame.marks, prior.other_kinds)
+    found: dict[tuple[int, ...], float] = {}
+    for count in {len(chosen) for chosen in sets}:
+        same = [chosen for chosen in sets if len(chosen) == count]
+        index = np.array(same, dtype=np.int64).reshape(len(same), count)
+        found |= dict(zip(same, set_log_priors(shares, prior, index).tolist(), strict=True))
+    return found
 
 
 def _weigh(frame: Frame, prior: CountPrior, should_stop: Callable[[], bool] | None) -> dict[tuple[int, ...], float]:
@@ -439,11 +463,11 @@ def _evaluate(
 
 
 def _at_own_solutions(
-    model: Model, explanations: list[Explanation], prior: CountPrior, should_stop: Callable[[], bool] | None
+    model: Model, explanations: list[Explanation], should_stop: Callable[[], bool] | None
 ) -> list[Explanation]:
     """The leading explanations linearised again, each at its own solution."""
     base = explanations[0].frame
-    weights = {e.chosen: replace(e) for e in explanations}
+    weights = {e.chosen: e for e in explanations}
     wanted: set[tuple[int, ...]] = set()
     if loss_bends(base.linear):
         # a loss that moves the flows is not judged by what a small one would do
@@ -460,24 +484,21 @@ def _at_own_solutions(
         if not fresh or (should_stop and should_stop()):
             break
         for chosen in fresh:
-            weights[chosen] = _at_own_solution(model, base, chosen, weights[chosen], prior)
+            weights[chosen] = _at_own_solution(model, base, chosen, weights[chosen])
         solved |= fresh
     return list(weights.values())
 
 
-def _at_own_solution(
-    model: Model, base: Frame, chosen: tuple[int, ...], before: Explanation, prior: CountPrior
-) -> Explanation:
+def _at_own_solution(model: Model, base: Frame, chosen: tuple[int, ...], before: Explanation) -> Explanation:
     """One explanation linearised at its own solution."""
     if not chosen:
         return replace(before, log_weight=before.log_weight + sign_log_weight(model, before.frame, ()))
     frame, own = own_frame(model, base, chosen)
-    shares = mark_shares(base.marks, prior.other_kinds)
     weight = (
         frame.log_evidence_of_none
         - base.log_evidence_of_none
         + frame.log_gain(own)
-        + set_log_prior(shares, prior, chosen)
+        + before.log_prior
         + sign_log_weight(model, frame, own)
     )
-    return Explanation(chosen=own, frame=frame, log_weight=weight)
+    return replace(before, chosen=own, frame=frame, log_weight=weight)

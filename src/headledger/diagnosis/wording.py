@@ -3,18 +3,27 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import replace
 from datetime import datetime
 from typing import TYPE_CHECKING
 from zoneinfo import ZoneInfo
 
 from headledger.diagnosis.descents import sweep_of
-from headledger.diagnosis.result import CauseKind, FurtherReading, GaugeSight, Place, TroubleSight, Verdict
+from headledger.diagnosis.result import (
+    BudgetShare,
+    CauseKind,
+    FurtherReading,
+    GaugeSight,
+    Place,
+    TroubleSight,
+    Verdict,
+)
 from headledger.plant.job import Job, SpellKind
 from headledger.quantities import format_quantity as amount
 
 if TYPE_CHECKING:  # the screen words things before anything heavy is loaded
+    from headledger.diagnosis.budget import InputKind
     from headledger.diagnosis.estimate import Model
     from headledger.diagnosis.findings import Finding
     from headledger.diagnosis.verdicts import Judged
@@ -123,6 +132,100 @@ def _tells(separates: Sequence[tuple[str, str]]) -> str:
 def _plain_kind(name: str) -> str:
     """A kind of cause in words; nothing wrong is a kind here."""
     return "nothing wrong" if name == "none" else kind_words(CauseKind(name))
+
+
+SCATTER = "readings' scatter"
+NOTHING_MEASURES = "heads and flows that nothing measures"
+THE_REST = "the rest"
+_IN_A_RUN = frozenset({CauseKind.BLOCKAGE, CauseKind.LOW_LOSS, CauseKind.AIR_POCKET, CauseKind.LEAK})
+
+
+def class_words(tags: Sequence[str], *, own: bool) -> str:
+    """The stated class of a gauge, or of one instrument that serves several tags, as a source of doubt."""
+    return f"class of {' and '.join(tags)}" + (" itself" if own else "")
+
+
+def source_words(kind: InputKind, owner: str) -> str:
+    """An uncertain input of the job as a source of doubt; calibrations have `class_words`."""
+    name = owner.removeprefix("station ").removeprefix("gauge ")
+    words = {"liquid temperature": "temperature", "leg temperature": "temperature of the legs"}.get(
+        kind.value, kind.value
+    )
+    return f"{words} of {name}" if name else words
+
+
+def size_words(kind: CauseKind, place: Place) -> str:
+    """The size of a cause as a source of doubt."""
+    if kind is CauseKind.LOW_LOSS:
+        return f"size of the loss missing in {place_words(place)}"
+    words = kind_words(kind).removeprefix("a ").removeprefix("an ")
+    if place == Place():
+        return f"size of the {words}"
+    return f"size of the {words} {'in' if kind in _IN_A_RUN else 'at'} {place_words(place)}"
+
+
+def budget_sentence(tag: str, budget: Sequence[BudgetShare]) -> str:
+    """Where a gauge's uncertainty comes from, in one sentence; empty where nothing is known of it."""
+    if not budget:
+        return ""
+    parts = ", ".join(f"{share.what} {percent(share.percent / 100.0)}" for share in budget)
+    return f"{tag}: its uncertainty comes, by share of the variance, from {parts}."
+
+
+MOST_ODDS = 1000.0
+"""Odds are not told beyond this: the model itself is not known better. [-]"""
+
+EVEN_ODDS = 1.5
+"""Odds nearer to even than this are none. [-]"""
+
+
+def odds_words(nats: float) -> str:
+    """Odds of a logarithm, the larger side first."""
+    odds = math.exp(min(abs(nats), 2.0 * math.log(MOST_ODDS)))
+    if odds > MOST_ODDS:
+        return f"more than {MOST_ODDS:.0f} to 1"
+    return f"{odds:.0f} to 1" if odds >= 9.95 else f"{odds:.2g} to 1"
+
+
+def against_sentence(kind: CauseKind | None, place: Place, evidence_nats: float, prior_nats: float, beside: str) -> str:
+    """What readings say, and what was to be expected beforehand, between a finding and something in its stead.
+
+    Parameters
+    ----------
+    kind : CauseKind or None
+        None for nothing in its stead.
+    place : Place
+    evidence_nats, prior_nats : float
+        Of the finding less that of the other. [nat]
+    beside : str
+        What else is then present, where nothing stands in its stead; empty where nothing is.
+    """
+    other = f"{kind_words(kind)} at {place_words(place)}" if kind else beside + " alone" if beside else "nothing wrong"
+    other = other.replace(" at the whole job", "")
+    even = math.log(EVEN_ODDS)
+    if abs(evidence_nats) < even:
+        if abs(prior_nats) < even:
+            return f"The readings do not tell it from {other}, and beforehand neither was likelier."
+        side = "for" if prior_nats > 0.0 else "against"
+        decides = f"only what was likelier beforehand decides, {odds_words(prior_nats)} {side} it"
+        return f"The readings do not tell it from {other}: {decides}."
+    usual = f"the {'likelier' if prior_nats > 0.0 else 'less likely'}, {odds_words(prior_nats)}"
+    beforehand = "" if abs(prior_nats) < even else f"; beforehand it was {usual}"
+    odds = odds_words(evidence_nats)
+    favoured = f"it {odds} over {other}" if evidence_nats > 0.0 else f"{other} over it, {odds}"
+    return f"The readings favour {favoured}{beforehand}."
+
+
+def misfit_sentence(before: float, after: float, count: int, beside: str) -> str:
+    """How much better the readings fit with a finding, and with what else its explanation holds."""
+    given = f" with it and {beside}" if beside else ""
+    return f"Misfit {before:.0f} → {after:.0f} over {count} readings{given} (sum of squares, in standard deviations)."
+
+
+def beside_words(causes: Iterable[tuple[CauseKind, Place]]) -> str:
+    """Causes that stand beside one in an explanation, always in one order; empty where there is none."""
+    words = sorted(f"{kind_words(kind)} at {place_words(place)}" for kind, place in causes)
+    return " and ".join(words).replace(" at the whole job", "")
 
 
 def trait_statement(model: Model, kind: CauseKind, place: Place, size: float) -> str:

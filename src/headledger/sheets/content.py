@@ -8,11 +8,13 @@ from zoneinfo import ZoneInfo
 
 from headledger import __version__
 from headledger.diagnosis.result import CauseFound, CheckResult, GaugeFound, GaugeSpell, SpellFound
+from headledger.diagnosis.wording import budget_sentence
 from headledger.sheets.columns import error_columns, flow_words, flows_line, spell_columns
 from headledger.sheets.gauge_facts import Fact, conditions, identity
-from headledger.sheets.headline import cause_label, check_worth, told_causes
+from headledger.sheets.headline import check_worth, told_causes
 from headledger.sheets.marks import by_trouble, verdict_label
 from headledger.sheets.numbers import clock_range, percent
+from headledger.sheets.why import finding_title, own_residuals
 
 Rows = tuple[tuple[str, ...], ...]
 
@@ -44,6 +46,10 @@ class GaugePage:
     spells : tuple of tuple of str
     findings : tuple of (str, str)
         Probability and label of a cause, and its sentence with its rivals.
+    behind : tuple of str
+        What each of them rests on: its odds, and how far this gauge is off with no cause and with it; empty where nothing is at hand.
+    budget : str
+        Where the uncertainty comes from.
     """
 
     gauge: GaugeFound
@@ -57,11 +63,14 @@ class GaugePage:
     spell_head: tuple[str, ...]
     spells: Rows
     findings: tuple[tuple[str, str], ...]
+    behind: tuple[str, ...] = ()
+    budget: str = ""
 
 
 def gauge_page(result: CheckResult, gauge: GaugeFound) -> GaugePage:
     """The words and numbers of one gauge's page."""
     unit = gauge.unit.text
+    causes = tuple(result.causes[i] for i in (*gauge.causes, *gauge.given))
     return GaugePage(
         gauge=gauge,
         title=f"{gauge.tag} at {gauge.station}",
@@ -85,7 +94,9 @@ def gauge_page(result: CheckResult, gauge: GaugeFound) -> GaugePage:
         ),
         spell_head=("Spell", "From – until", "Flow at the tap", f"Reads, {unit}", "Expected", "± U", "Off by"),
         spells=tuple(_spell_row(result, gauge, spell, said) for spell, said in _paired(result, gauge)),
-        findings=_told(tuple(result.causes[i] for i in (*gauge.causes, *gauge.given))),
+        findings=_told(causes),
+        behind=tuple(_behind(cause, gauge) for cause in told_causes(causes)[0]),
+        budget=budget_sentence(gauge.tag, gauge.budget),
     )
 
 
@@ -160,9 +171,15 @@ def made_by(result: CheckResult) -> str:
 
 def _told(causes: tuple[CauseFound, ...]) -> tuple[tuple[str, str], ...]:
     told, rest = told_causes(causes)
-    labels = (f"{percent(c.probability)}  {cause_label(c)}{' (accepted)' if c.accepted else ''}" for c in told)
-    sentences = tuple((label, cause.says) for label, cause in zip(labels, told, strict=True))
+    sentences = tuple((finding_title(cause), cause.says) for cause in told)
     return (*sentences, ("", rest)) if rest else sentences
+
+
+def _behind(cause: CauseFound, gauge: GaugeFound) -> str:
+    if cause.evidence is None:
+        return ""
+    odds = " ".join(against.says for against in cause.evidence.against)
+    return f"{odds} {own_residuals(cause, gauge)}".strip()
 
 
 def _paired(result: CheckResult, gauge: GaugeFound) -> tuple[tuple[SpellFound, GaugeSpell], ...]:

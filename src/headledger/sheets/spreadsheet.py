@@ -7,6 +7,7 @@ import math
 from io import StringIO
 
 from headledger.diagnosis.result import CheckResult, GaugeFound, GaugeSpell, SpellFound
+from headledger.diagnosis.wording import budget_sentence
 from headledger.sheets.json_values import stamp
 
 COLUMNS = (
@@ -27,6 +28,7 @@ COLUMNS = (
     "expected",
     "expected u95",
     "why",
+    "budget",
 )
 
 # A spreadsheet takes a cell that begins so for a formula.
@@ -71,6 +73,7 @@ def _row(result: CheckResult, gauge: GaugeFound, spell: SpellFound, said: GaugeS
         _number(None if said.expected_pa is None else said.expected_pa / factor),
         _number(None if said.u95_pa is None else said.u95_pa / factor),
         harmless(gauge.why),
+        harmless(budget_sentence(gauge.tag, gauge.budget)),
     )
 
 

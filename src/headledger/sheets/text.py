@@ -13,12 +13,14 @@ from rich.table import Table
 from rich.text import Text
 
 from headledger.diagnosis.result import CauseFound, CheckResult, GaugeFound, Verdict
+from headledger.diagnosis.wording import budget_sentence
 from headledger.sheets.columns import error_columns, flows_line
 from headledger.sheets.headline import cause_label, check_worth, headline, told_causes
 from headledger.sheets.marks import CAUTIONS, by_trouble, verdict_label
 from headledger.sheets.numbers import clock_range, percent
 from headledger.sheets.plain import bulleted, hanging, plain_table, print_report, print_section
 from headledger.sheets.sight_text import print_sight
+from headledger.sheets.why import RESIDUAL_HEAD, finding_title, moved, with_evidence
 
 _STYLES = {
     Verdict.FAIL: "bold red",
@@ -31,7 +33,13 @@ _MOST_REMARKS = 20
 
 
 def write_report(
-    result: CheckResult, stream: TextIO, *, width: int | None = None, color: bool = True, sight: bool = False
+    result: CheckResult,
+    stream: TextIO,
+    *,
+    width: int | None = None,
+    color: bool = True,
+    why: bool = False,
+    sight: bool = False,
 ) -> None:
     """Write the report.
 
@@ -43,13 +51,15 @@ def write_report(
         Columns; the terminal's, or 80 where there is none.
     color : bool
         False prints no colour even on a terminal; a stream that is no terminal never gets any.
+    why : bool
+        Print the numbers behind every finding and every gauge's uncertainty too.
     sight : bool
         Whether to say also how small a trouble these readings could have shown.
     """
-    print_report(partial(_print_report, result, with_sight=sight), stream, width=width, color=color)
+    print_report(partial(_print_report, result, why=why, with_sight=sight), stream, width=width, color=color)
 
 
-def _print_report(result: CheckResult, console: Console, *, with_sight: bool) -> None:
+def _print_report(result: CheckResult, console: Console, *, why: bool, with_sight: bool) -> None:
     zone = ZoneInfo(result.job.timezone)
     console.print(Text(result.job.title, style="bold"))
     if result.job.site_name:
@@ -59,6 +69,10 @@ def _print_report(result: CheckResult, console: Console, *, with_sight: bool) ->
     print_section(console, "Gauges", [_gauge_table(by_trouble(result.gauges))])
     print_section(console, "Why", _why_lines(result.gauges))
     print_section(console, "Findings", _finding_lines(result.causes))
+    if why:
+        for cause in with_evidence(result.causes):
+            print_section(console, f"Behind {finding_title(cause)}", _evidence_parts(result, cause))
+        print_section(console, "Where each gauge's uncertainty comes from", _budget_lines(result.gauges))
     print_section(console, "Next checks", _check_lines(result))
     if with_sight and result.sight is not None:
         print_sight(result.job, result.sight, console)
@@ -120,6 +134,28 @@ def _finding_lines(causes: Iterable[CauseFound]) -> Iterator[Table]:
         yield hanging(Text(percent(cause.probability).rjust(6), style="bold"), body, label_width=6)
     if rest:
         yield hanging("", Text(rest), label_width=6)
+
+
+def _evidence_parts(result: CheckResult, cause: CauseFound) -> Iterator[Table | Text]:
+    if cause.evidence is None:
+        return
+    for against in cause.evidence.against:
+        yield hanging("-", Text(against.says))
+    yield hanging("-", Text(cause.evidence.says))
+    told = moved(result, cause)
+    if told.rows:
+        table = plain_table(*RESIDUAL_HEAD, right=frozenset({"Spell", "No cause", "With it", "± u95"}))
+        for row in told.rows:
+            table.add_row(*(Text(cell, no_wrap=True) for cell in row))
+        yield table
+    if told.rest:
+        yield Text(told.rest)
+
+
+def _budget_lines(gauges: Iterable[GaugeFound]) -> Iterator[Table]:
+    for gauge in by_trouble(gauges):
+        if gauge.budget:
+            yield hanging("-", Text(budget_sentence(gauge.tag, gauge.budget)))
 
 
 def _check_lines(result: CheckResult) -> Iterator[Table | Text]:

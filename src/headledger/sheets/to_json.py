@@ -7,12 +7,15 @@ from typing import Any
 
 from headledger import __version__
 from headledger.diagnosis.result import (
+    Against,
     CauseFound,
     CauseKind,
     CheckResult,
+    Evidence,
     GaugeFound,
     GaugeSpell,
     NextCheck,
+    Residual,
     Rival,
     RunGrade,
     SpellFound,
@@ -31,6 +34,7 @@ _IN_SECONDS = frozenset({CauseKind.SLUGGISH, CauseKind.CLOCK_OFFSET})
 
 def result_to_json(result: CheckResult) -> dict[str, Any]:
     """The result as the result file holds it: units of the job, times in UTC, null where there is no number."""
+    units = {gauge.tag: gauge.unit for gauge in result.gauges}
     return {
         "format": RESULT_FORMAT,
         "headledger": __version__,
@@ -44,7 +48,9 @@ def result_to_json(result: CheckResult) -> dict[str, Any]:
         "spells": [_spell(spell, result.job.display.flow, result.job.display.length) for spell in result.spells],
         "clean_probability": number(result.clean_probability),
         "gauges": [_gauge(gauge) for gauge in result.gauges],
-        "causes": [_cause(cause) for cause in result.causes],
+        "causes": [
+            _cause(cause) | {"evidence": cause.evidence and _evidence(cause.evidence, units)} for cause in result.causes
+        ],
         "next_checks": [_next_check(check) for check in result.next_checks],
         "rejects": [_reject(reject) for reject in result.rejects],
         "remarks": list(result.remarks),
@@ -118,6 +124,7 @@ def _gauge(gauge: GaugeFound) -> dict[str, Any]:
         "causes": list(gauge.causes),
         "given": list(gauge.given),
         "why": gauge.why,
+        "budget": [{"what": share.what, "percent": number(share.percent)} for share in gauge.budget],
     }
 
 
@@ -144,6 +151,42 @@ def _cause(cause: CauseFound) -> dict[str, Any]:
         "accepted": cause.accepted,
         "rivals": [_rival(rival) for rival in cause.rivals],
         "says": cause.says,
+    }
+
+
+def _evidence(evidence: Evidence, units: dict[str, Unit]) -> dict[str, Any]:
+    return {
+        "against": [_against(against) for against in evidence.against],
+        "residuals": [_residual(residual, units[residual.tag]) for residual in evidence.residuals],
+        "misfit": {
+            "before": number(evidence.misfit_before),
+            "after": number(evidence.misfit_after),
+            "count": evidence.count,
+            "says": evidence.says,
+        },
+    }
+
+
+def _against(against: Against) -> dict[str, Any]:
+    return {
+        # the same word that `next_checks` have for it
+        "kind": "none" if against.kind is None else against.kind.value,
+        "at": place_to_json(against.place),
+        "evidence_nats": number(against.evidence_nats),
+        "prior_nats": number(against.prior_nats),
+        "says": against.says,
+    }
+
+
+def _residual(residual: Residual, unit: Unit) -> dict[str, Any]:
+    return {
+        "gauge": residual.tag,
+        "spell": residual.spell,
+        "before": in_unit(residual.before_pa, unit),
+        "after": in_unit(residual.after_pa, unit),
+        "sd_before": in_unit(residual.sd_before_pa, unit),
+        "sd_after": in_unit(residual.sd_after_pa, unit),
+        "unit": unit.as_difference().text,
     }
 
 

@@ -20,6 +20,7 @@ from headledger.sheets.paths import way_past, ways_through
 from headledger.tui.gauge_search import GaugeSearch
 from headledger.tui.screens.gauge import GaugeScreen
 from headledger.tui.screens.sight import SightScreen
+from headledger.tui.screens.why import WhyScreen
 from headledger.tui.widgets.answers import Answers
 from headledger.tui.widgets.findings_list import FindingsList
 from headledger.tui.widgets.gauge_detail import GaugeDetail
@@ -57,6 +58,7 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
 - **a** shows the answers in full, or a line each
 - **f** shows the findings, what the data cannot tell them from, and the next checks, and leads back; **g** leads to the gauges
 - **s** shows how small a trouble these readings could have shown, and where
+- **y** shows why: what a finding rests on, and where the uncertainty of the chosen gauge comes from
 - **r** checks the job again, with what is in its folder now
 """
     COMMANDS: ClassVar = Screen.COMMANDS | {GaugeSearch}
@@ -69,6 +71,7 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
         Binding("s", "sight", "Sight", id="sight"),
         Binding("g", "gauges", "Gauges", id="gauges", show=False),
         Binding("enter", "open", "Gauge", id="open", priority=True),
+        Binding("y", "why", "Why", id="why"),
         Binding("r", "again", "Again", id="again", tooltip="Check the job again, with what is in its folder now"),
     ]
 
@@ -180,6 +183,11 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
         """Show what these readings could have shown."""
         if self.result.sight is not None:
             self.app.push_screen(SightScreen(self.result.job, self.result.sight, self.way_index))
+
+    def action_why(self) -> None:
+        """Show what the findings rest on, those of the chosen gauge first."""
+        if self._tag:
+            self.app.push_screen(WhyScreen(self.result, self._tag))
 
     def action_again(self) -> None:
         """Check the job anew."""

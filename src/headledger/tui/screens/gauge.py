@@ -15,6 +15,7 @@ from headledger.diagnosis.result import CheckResult
 from headledger.sheets.gauge_facts import identity_lines
 from headledger.sheets.marks import CAUTIONS, by_trouble
 from headledger.sheets.trend_picture import trend_picture
+from headledger.tui.screens.why import WhyScreen
 from headledger.tui.widgets.findings_list import FindingsList
 from headledger.tui.widgets.gauge_detail import GaugeDetail
 from headledger.tui.widgets.picture_view import PictureView
@@ -37,6 +38,7 @@ What one gauge read over the whole log, what it should have read in each spell, 
 The shaded stretches are the spells, the line across each is what everything else says the gauge should read, with its 95 % band.
 
 - **← →** step through the spells, **n** and **p** to the next gauge and the one before, the worst news first
+- **y** shows why: what its findings rest on, and where its uncertainty comes from
 - **esc** back to the line along the pipe
 """
     BINDINGS: ClassVar[list[BindingType]] = [
@@ -45,6 +47,7 @@ The shaded stretches are the spells, the line across each is what everything els
         Binding("right", "spell(1)", "Spell", id="spell-after", show=False, priority=True),
         Binding("n", "gauge(1)", "Next gauge", id="next-gauge"),
         Binding("p", "gauge(-1)", "Gauge before", id="gauge-before"),
+        Binding("y", "why", "Why", id="why"),
     ]
 
     spell_index: var[int] = var(0, init=False)
@@ -85,6 +88,10 @@ The shaded stretches are the spells, the line across each is what everything els
     def action_back(self) -> None:
         """Back, with what was looked at last."""
         self.dismiss((self.tag, self.spell_index))
+
+    def action_why(self) -> None:
+        """Show what its findings rest on."""
+        self.app.push_screen(WhyScreen(self._result, self.tag))
 
     def action_spell(self, by: int) -> None:
         """The spell before or after."""
