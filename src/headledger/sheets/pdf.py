@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from io import BytesIO
 
 from reportlab import rl_config
@@ -26,7 +27,6 @@ from headledger.sheets.pdf_parts import (
     answer_table,
     as_left,
     cautions,
-    facts,
     finding_lines,
     identity,
     inputs,
@@ -39,6 +39,9 @@ from headledger.sheets.trend_picture import trend_picture
 
 # Pages as compressed bytes, not as letters that stand for them: a tenth quicker, and smaller.
 rl_config.useA85 = 0
+
+LOW_SHARE = 0.65
+"""Height of the summary's picture beside next checks, as a part of its usual one. [-]"""
 
 
 def sheets_to_pdf(result: CheckResult, *, paper: Paper = Paper.A4, gauges: Sequence[str] | None = None) -> bytes:
@@ -82,7 +85,9 @@ def _summary(result: CheckResult, room: Room) -> list[Flowable]:
     story.append(Spacer(1, 4))
     answers = [(answer.question, "\n".join(answer.lines)) for answer in headline(result)]
     story.append(answer_table(answers, width))
-    story += _way_picture(result, ways_through(result.job), room)
+    # what is to be done next takes its place from the picture, so that the page stays one
+    low = replace(room, line=LOW_SHARE * room.line) if result.next_checks else room
+    story += _way_picture(result, ways_through(result.job), low)
     story.append(words("Gauges", SECTION))
     shares = (0.13, 0.17, 0.17, 0.11, 0.1, 0.11, 0.09, 0.12)
     story.append(
@@ -105,7 +110,8 @@ def _summary(result: CheckResult, room: Room) -> list[Flowable]:
             else []
         )
         story += [words(line, FINE) for line in result.remarks]
-    under_what = [words("Conditions", SECTION), facts(conditions(result.job), width)]
+    held = "; ".join(f"{label.lower()} {value}" for label, value in conditions(result.job))
+    under_what = [words("Conditions", SECTION), words(held, FINE)]
     signed = [words("Caution", SECTION), cautions(), *signatures(width), *inputs(result)]
     story.append(KeepTogether([*under_what, *signed]))
     return story
