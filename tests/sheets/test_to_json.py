@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 from headledger import __version__
-from headledger.diagnosis.result import CauseFound, CauseKind, CheckResult, Place, Verdict
+from headledger.diagnosis.result import CauseFound, CauseKind, CheckResult, GaugeHistory, Place, Verdict
 from headledger.quantities import Dimension, Unit
 from headledger.sheets.json_values import stamp
 from headledger.sheets.to_json import cause_size, result_to_json, result_to_text
@@ -31,7 +31,7 @@ def test_result_file_of_a_troubled_job_has_the_promised_keys(troubled_result: Ch
     assert set(written) >= {"spells", "clean_probability", "gauges", "causes", "next_checks", "rejects"}
     assert set(written["gauges"][0]) == {
         "tag", "station", "unit", "verdict", "outside_probability", "error", "u95", "tolerance", "spells", "causes",
-        "given", "why", "budget",
+        "given", "why", "budget", "history",
     }  # fmt: skip
     assert set(written["causes"][0]) == {
         "kind", "at", "size", "u95", "unit", "start", "probability", "accepted", "rivals", "says",
@@ -85,6 +85,20 @@ def test_gauge_numbers_are_in_the_unit_of_the_gauge(troubled_result: CheckResult
     gauge = result_to_json(troubled_result)["gauges"][2]
     assert (gauge["unit"], gauge["error"], gauge["u95"], gauge["tolerance"]) == ("barg", 0.21, 0.03, 0.06)
     assert gauge["spells"][0] == {"id": 1, "reading": 3.41, "expected": 3.2, "u95": 0.03}
+
+
+def test_history_of_a_gauge_is_in_its_unit_and_null_where_there_is_none(troubled_result: CheckResult):
+    """A bar is 100 000 Pa; 1 772 438 400 s is 2026-03-02 08:00 UTC."""
+    kept = GaugeHistory(
+        tag="PT-3", holds=False, leaves_at_s=1_772_438_400.0, by="cusum", zero_pa=2_000.0, zero_sd_pa=500.0,
+        span_ratio=1.01, span_sd_ratio=0.004, says="They leave.",
+    )  # fmt: skip
+    gauges = result_to_json(replace(troubled_result, histories=(kept,)))["gauges"]
+    assert gauges[0]["history"] is None
+    assert gauges[2]["history"] == {
+        "holds": False, "leaves": "2026-03-02T08:00:00Z", "by": "cusum", "spike": None, "zero": 0.02, "zero_sd": 0.005,
+        "span": 1.01, "span_sd": 0.004, "says": "They leave.",
+    }  # fmt: skip
 
 
 def test_gauge_in_psi_is_written_to_six_digits(sound_result: CheckResult):

@@ -9,6 +9,7 @@ from typing import Any
 import numpy as np
 import pytest
 from numpy.typing import NDArray
+from scipy.special import ndtri
 
 from headledger.statistics.gaussian import Group, Whitened, own_estimate, whiten
 
@@ -175,3 +176,55 @@ def test_own_estimate_without_shared_inputs_is_least_squares_with_its_prior() ->
         shared=np.zeros((2, 0)),
     )
     assert own_estimate(group, np.zeros(0)) == pytest.approx([4.0 / 3.0])
+
+
+RIPPS: dict[str, Any] = REFERENCE["ripps"]
+
+
+def test_vdi_2048_measurement_tests_have_the_z_of_their_adjustments() -> None:
+    """Z of FDKeI as worked out beside the example: 4.503; SpI −1.964, V −0.297, HK −1.748, A7 −0.225, HDNK −0.201 (own calculation)."""
+    measured, root, balances = vdi_case(widen=False)
+    white, reconciled = reconcile(measured, root, balances)
+    before, after = root @ root.T, root @ white.shared_covariance() @ root.T
+    spread = np.sqrt(np.maximum(np.diag(before - after), 1e-30))
+    z = dict(zip(VDI["names"], (measured - reconciled) / spread, strict=True))
+    published = {
+        "FDKeI": 4.503,
+        "FDKeII": 4.503,
+        "SpI": -1.964,
+        "V": -0.297,
+        "HK": -1.748,
+        "A7": -0.225,
+        "HDNK": -0.201,
+    }
+    for name, value in published.items():
+        assert z[name] == pytest.approx(value, abs=0.55e-3), name
+
+
+def test_nodal_tests_of_the_biased_exchanger_are_the_published_ones() -> None:
+    nodes, measured = np.array(EXCHANGER["nodes"], dtype=np.float64), np.array(EXCHANGER["biased"])
+    for row, published in zip(nodes, EXCHANGER["nodal_test"], strict=True):
+        white, _ = reconcile(measured, np.eye(6), row[None, :])
+        assert np.sqrt(white.residual @ white.residual) == pytest.approx(published, abs=0.55e-3)
+
+
+def test_only_the_biased_stream_exceeds_the_critical_value() -> None:
+    """Šidák: the two-sided normal quantile of ``1 − (1 − 0.05)^(1/6)``."""
+    level = 1.0 - 0.95 ** (1.0 / 6.0)
+    critical = float(ndtri(1.0 - level / 2.0))
+    assert critical == pytest.approx(EXCHANGER["critical_measurement_test"], abs=0.5e-4)
+    over = [test > critical for test in EXCHANGER["measurement_test"]]
+    assert over == [False, True, False, False, False, False]
+
+
+def test_whiten_linear_set_after_ripps_gives_its_objective_and_values_and_those_without_a_stream() -> None:
+    balances, measured = np.array(RIPPS["balances"]), np.array(RIPPS["measured"])
+    deviation = np.sqrt(RIPPS["variances"])
+    white, reconciled = reconcile(measured, np.diag(deviation), balances)
+    assert white.residual @ white.residual == pytest.approx(RIPPS["objective"], abs=0.5e-4)
+    assert reconciled == pytest.approx(RIPPS["reconciled"], abs=0.5e-6)
+    for stream, published in enumerate(RIPPS["objective_without"]):
+        wide = deviation.copy()
+        wide[stream] = 1e3
+        without, _ = reconcile(measured, np.diag(wide), balances)
+        assert without.residual @ without.residual == pytest.approx(published, abs=0.5e-4)

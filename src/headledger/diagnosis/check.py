@@ -14,6 +14,7 @@ from headledger.diagnosis.estimate import Model
 from headledger.diagnosis.evidence import evidence_of
 from headledger.diagnosis.findings import list_findings
 from headledger.diagnosis.fit import fit_of
+from headledger.diagnosis.history import gauge_histories
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.next_checks import next_checks
 from headledger.diagnosis.readings import read_timeline, with_logged_barometer
@@ -144,12 +145,14 @@ def check_job(
     fit = fit_of(posterior)
     tell("judging gauges", 0.85)
     judged = [judge_gauge(model, posterior, gauge) for gauge in range(layout.gauge_count)]
+    gauges = tuple(gauge_found(model, posterior, findings, gauge, one) for gauge, one in enumerate(judged))
     return CheckResult(
         job=job,
         inputs=_inputs(job, digests),
         spells=spells_found(model, posterior, findings),
         clean_probability=posterior.clean_probability * unseen * (1.0 - fit.unknown_probability),
-        gauges=tuple(gauge_found(model, posterior, findings, gauge, one) for gauge, one in enumerate(judged)),
+        gauges=gauges,
+        histories=gauge_histories(layout, timeline, stretches, gauges),
         causes=tuple(
             cause_found(model, finding, evidence)
             for finding, evidence in zip(findings, evidence_of(model, posterior, findings), strict=True)

@@ -12,10 +12,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from headledger.diagnosis.layout import Layout
+from headledger.diagnosis.neighbours import Told, left_over, own_and_others
 from headledger.diagnosis.readings import Timeline
 from headledger.diagnosis.result import CauseKind, Place
 from headledger.diagnosis.spells import Spell
-from headledger.diagnosis.trait import FEWEST_SAMPLES, Trait
+from headledger.diagnosis.trait import Trait
 from headledger.physics.waves import travel_s
 from headledger.statistics.lag import lagged
 from headledger.statistics.sizes import log_sum
@@ -34,28 +35,8 @@ TRAVEL_STEPS = 8
 SETTLED_SHARE = 0.25
 """Longest lag that is looked for, as a part of the usual spell. [-]"""
 
-MISFIT_SHARE = 0.05
-"""How far a sound gauge may part from what the others predict while flows change, in its own usual motion. [-]"""
-
 PER_CHANGE = 6.0
 """A change of flow tells of a gauge's lag as much as so many independent readings. [-]"""
-
-AFTER_CHANGE_S = 120.0
-"""How long after a change a lag may still show. [s]"""
-
-MOTIONS = 6
-"""Independent motions of the other gauges from which one gauge's own is predicted."""
-
-
-@dataclass(frozen=True, slots=True)
-class _Told:
-    """What some gauges did, and the others: times, readings, motions, where flows change, and what a sound gauge may leave unexplained."""
-
-    time_s: Array
-    own: Array
-    motions: Array
-    near: NDArray[np.bool_]
-    floor: Array
 
 
 def slow_gauges(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> list[Trait]:
@@ -65,7 +46,7 @@ def slow_gauges(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> 
     for index, gauge in enumerate(layout.job.gauges):
         lags = _grid(_allowed_s(layout, timeline) + gauge.damping_s, longest_s)
         others = [k for k in range(layout.gauge_count) if k != index]
-        told = _own_and_others(layout, timeline, spells, (index,), others)
+        told = own_and_others(layout, timeline, spells, (index,), others)
         if told is None or not lags.size:
             continue
         tried = [lagged(told.time_s, told.motions, float(lag)) for lag in lags]
@@ -91,7 +72,7 @@ def late_logs(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> li
     for file in files:
         own = tuple(k for k, one in enumerate(timeline.gauge_files) if one == file)
         elsewhere = [k for k, one in enumerate(timeline.gauge_files) if one != file]
-        told = _own_and_others(layout, timeline, spells, own, elsewhere)
+        told = own_and_others(layout, timeline, spells, own, elsewhere)
         if file == main or told is None or not steps.size:
             continue
         none = _sound_error(layout, timeline, told)
@@ -103,7 +84,7 @@ def late_logs(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> li
     return found
 
 
-def _offset_fit(timeline: Timeline, spells: Sequence[Spell], told: _Told, offsets: Array, none: float) -> _Fit:
+def _offset_fit(timeline: Timeline, spells: Sequence[Spell], told: Told, offsets: Array, none: float) -> _Fit:
     """How offsets of the stamps explain what the gauges of a log did, looked at finely about the best."""
 
     def error(offset_s: float) -> float:
@@ -170,7 +151,7 @@ def _travel_s(layout: Layout) -> float:
     return travel_s(sum(run.length_m for run in layout.job.runs))
 
 
-def _sound_error(layout: Layout, timeline: Timeline, told: _Told, damping_s: float = 0.0) -> float:
+def _sound_error(layout: Layout, timeline: Timeline, told: Told, damping_s: float = 0.0) -> float:
     """Squares that sound gauges leave unexplained: at their damping, or as best they may where changes take their time to travel.
 
     A wave comes later or earlier than at the others, and a long line fills slowly: both a delay and a lag may be the pipe's own.
@@ -190,44 +171,9 @@ def _longest_lag_s(timeline: Timeline, spells: Sequence[Spell]) -> float:
     return min(LONGEST_LAG_S, SETTLED_SHARE * float(np.median(lengths))) if lengths else 0.0
 
 
-def _near_changes(timeline: Timeline, spells: Sequence[Spell]) -> NDArray[np.bool_]:
-    """Blocks in which flows change, and those soon after: only there does a lag show, and a slow wander elsewhere is none."""
-    near = np.ones(timeline.start_s.size, dtype=bool)
-    after = int(np.ceil(AFTER_CHANGE_S / timeline.width_s))
-    for spell in spells:
-        near[spell.first + after : spell.last] = False
-    return near
-
-
 def _grid(least_s: float, longest_s: float) -> Array:
     """Lags from the least that counts to the longest, evenly in their logarithm. [s]"""
     return np.geomspace(least_s, longest_s, LAG_STEPS) if least_s < longest_s else np.zeros(0)
-
-
-def _own_and_others(
-    layout: Layout, timeline: Timeline, spells: Sequence[Spell], own: Sequence[int], others: Sequence[int]
-) -> _Told | None:
-    """Readings of some gauges and the main motions of the others, where all are known."""
-    reading = timeline.reading_pa
-    kept = [k for k in others if np.isfinite(reading[:, k]).mean() > 0.5]
-    used = [k for k in own if np.isfinite(reading[:, k]).mean() > 0.5]
-    if len(kept) < 2 or not used:
-        return None
-    known = np.isfinite(reading[:, kept]).all(axis=1) & np.isfinite(reading[:, used]).all(axis=1)
-    if known.sum() < FEWEST_SAMPLES:
-        return None
-    time_s = timeline.start_s[known]
-    near = _near_changes(timeline, spells)[known]
-    if near.sum() < FEWEST_SAMPLES:
-        return None
-    scale = np.array([layout.job.gauges[k].tolerance_at(layout.job.gauges[k].range_high_pa) for k in kept])
-    away = reading[known][:, kept] / scale
-    away = away - away.mean(axis=0)
-    left, size, _ = np.linalg.svd(away, full_matrices=False)
-    count = min(MOTIONS, len(kept))
-    readings = reading[known][:, used]
-    floor = near.sum() * (MISFIT_SHARE * readings.std(axis=0)) ** 2
-    return _Told(time_s, readings, left[:, :count] * size[:count], near, floor)
 
 
 def _smoothed(time_s: Array, motions: Array, lag_s: float) -> Array:
@@ -241,22 +187,15 @@ def _shifted(time_s: Array, motions: Array, offset_s: float) -> Array:
     return np.column_stack([np.interp(time_s - offset_s, time_s, motion) for motion in motions.T])
 
 
-def _unexplained(told: _Told, motions: Array) -> float:
+def _unexplained(told: Told, motions: Array) -> float:
     """Squares that the motions leave unexplained, with what a sound gauge may leave; of several gauges the geometric mean."""
-    rest = _rest(told, motions)
+    rest = left_over(told, motions, told.near)
     return float(np.exp(np.log((rest**2).sum(axis=0) + told.floor + 1e-12).mean()))
 
 
-def _rest(told: _Told, motions: Array) -> Array:
-    """What the motions leave unexplained where flows change."""
-    design = np.column_stack([np.ones(motions.shape[0]), motions])[told.near]
-    own = told.own[told.near]
-    return np.asarray(own - design @ np.linalg.lstsq(design, own, rcond=None)[0])
-
-
-def _degrees(told: _Told, motions: Array, spells: Sequence[Spell]) -> float:
+def _degrees(told: Told, motions: Array, spells: Sequence[Spell]) -> float:
     """How many independent readings the rest is worth: neighbours that wander together count less, and a change of flow tells so much."""
-    rest = _rest(told, motions)
+    rest = left_over(told, motions, told.near)
     total = 0.0
     for column in rest.T:
         alike = float(np.clip((column[1:] @ column[:-1]) / max(float(column @ column), 1e-300), 0.0, 0.98))

@@ -250,6 +250,42 @@ class GaugeFound:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class GaugeHistory:
+    """How a gauge kept to what its neighbours say over the log, by control charts, and to a straight line over the spells.
+
+    Parameters
+    ----------
+    tag : str
+    holds : bool
+        Whether both charts stay in their limits.
+    leaves_at_s : float or None
+        When a chart first leaves them. [s since 1970-01-01 UTC]
+    by : str or None
+        `ewma` or `cusum`, whichever left first.
+    spike_s : float or None
+        When a stretch stood alone; it was left out of the charts. [s since 1970-01-01 UTC]
+    zero_pa, zero_sd_pa : float or None
+        Reading where nothing is expected, by the line through readings over what was expected, and its standard uncertainty. None
+        where too few spells, or spells too much alike, tell. [Pa]
+    span_ratio, span_sd_ratio : float or None
+        Slope of that line and its standard uncertainty. [-]
+    says : str
+        What the charts show in words.
+    """
+
+    tag: str
+    holds: bool
+    leaves_at_s: float | None = None
+    by: str | None = None
+    spike_s: float | None = None
+    zero_pa: float | None = None
+    zero_sd_pa: float | None = None
+    span_ratio: float | None = None
+    span_sd_ratio: float | None = None
+    says: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Rival:
     """A cause that the data cannot tell from another."""
 
@@ -605,6 +641,8 @@ class CheckResult:
         Results of actions that were taken into account, as they were given.
     sight : Sight or None
         What the readings at hand could have shown; None where it was not asked for.
+    histories : tuple of GaugeHistory
+        Of the gauges whose neighbours say enough for a chart, in the order of the gauge table.
     unexplained : str
         That no explanation weighed explains the readings, in words; empty where one does.
     """
@@ -623,3 +661,4 @@ class CheckResult:
     answers: tuple[str, ...] = ()
     sight: Sight | None = None
     unexplained: str = ""
+    histories: tuple[GaugeHistory, ...] = ()

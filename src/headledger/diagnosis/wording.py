@@ -26,6 +26,7 @@ if TYPE_CHECKING:  # the screen words things before anything heavy is loaded
     from headledger.diagnosis.budget import InputKind
     from headledger.diagnosis.estimate import Model
     from headledger.diagnosis.findings import Finding
+    from headledger.diagnosis.layout import Layout
     from headledger.diagnosis.verdicts import Judged
     from headledger.plant.gauges import Gauge
 
@@ -89,7 +90,7 @@ def place_words(place: Place) -> str:
 
 def clock(model: Model, time_s: float) -> str:
     """Time of day in the job's own zone."""
-    return f"{datetime.fromtimestamp(time_s, ZoneInfo(model.layout.job.timezone)):%H:%M}"
+    return _time_of_day(ZoneInfo(model.layout.job.timezone), time_s)
 
 
 def kind_words(kind: CauseKind) -> str:
@@ -393,6 +394,21 @@ def verdict_sentence(gauge: Gauge, judged: Judged, causes: Sequence[Finding], gi
         leans = ", given " + " and ".join(f"{kind_words(f.kind)} at {place_words(f.place)}" for f in given)
         leans = leans.replace(" at the whole job", "")
     return f"{gauge.tag}: {words}{leans}{because}: {numbers}."
+
+
+def history_statement(layout: Layout, leaves_at_s: float | None, by: str | None, spike_s: float | None) -> str:
+    """What control charts of a gauge show, in words."""
+    name = "Control charts of its difference from its neighbours"
+    zone = ZoneInfo(layout.job.timezone)
+    alone = "" if spike_s is None else f" (but for a stretch that stands alone at {_time_of_day(zone, spike_s)})"
+    if leaves_at_s is None or by is None:
+        return f"{name}: in limits over the whole log{alone}."
+    return f"{name}: they leave their limits at {_time_of_day(zone, leaves_at_s)} ({by.upper()}){alone}."
+
+
+def _time_of_day(zone: ZoneInfo, time_s: float) -> str:
+    """Time of day in a zone, to the minute."""
+    return f"{datetime.fromtimestamp(time_s, zone):%H:%M}"
 
 
 def unexplained_sentence(misfit: float, rows: int) -> str:

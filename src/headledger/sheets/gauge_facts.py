@@ -46,7 +46,12 @@ def identity_lines(result: CheckResult, gauge: GaugeFound) -> tuple[str, ...]:
     """The same as lines of text, labels in one column."""
     facts = identity(result, gauge)
     width = max(len(label) for label, _ in facts)
-    return tuple(f"{label.ljust(width)}  {value}" for label, value in facts)
+    return (*(f"{label.ljust(width)}  {value}" for label, value in facts), *history_lines(result, gauge))
+
+
+def history_lines(result: CheckResult, gauge: GaugeFound) -> tuple[str, ...]:
+    """How it kept to its neighbours over the log; nothing where they do not tell."""
+    return tuple(history.says for history in result.histories if history.tag == gauge.tag)
 
 
 def conditions(job: Job) -> tuple[Fact, ...]:

@@ -13,6 +13,7 @@ from headledger.diagnosis.result import (
     CheckResult,
     Evidence,
     GaugeFound,
+    GaugeHistory,
     GaugeSpell,
     NextCheck,
     Residual,
@@ -47,7 +48,11 @@ def result_to_json(result: CheckResult) -> dict[str, Any]:
         },
         "spells": [_spell(spell, result.job.display.flow, result.job.display.length) for spell in result.spells],
         "clean_probability": number(result.clean_probability),
-        "gauges": [_gauge(gauge) for gauge in result.gauges],
+        "gauges": [
+            _gauge(gauge)
+            | {"history": next((_history(h, gauge.unit) for h in result.histories if h.tag == gauge.tag), None)}
+            for gauge in result.gauges
+        ],
         "causes": [
             _cause(cause) | {"evidence": cause.evidence and _evidence(cause.evidence, units)} for cause in result.causes
         ],
@@ -134,6 +139,22 @@ def _gauge_spell(spell: GaugeSpell, unit: Unit) -> dict[str, Any]:
         "reading": in_unit(spell.reading_pa, unit),
         "expected": in_unit(spell.expected_pa, unit),
         "u95": in_unit(spell.u95_pa, unit),
+    }
+
+
+def _history(history: GaugeHistory, unit: Unit) -> dict[str, Any]:
+    # a zero is on the gauge's own scale, its standard error a difference
+    zero = None if history.zero_pa is None else (history.zero_pa - unit.offset) / unit.factor
+    return {
+        "holds": history.holds,
+        "leaves": stamp(history.leaves_at_s),
+        "by": history.by,
+        "spike": stamp(history.spike_s),
+        "zero": number(zero),
+        "zero_sd": in_unit(history.zero_sd_pa, unit),
+        "span": number(history.span_ratio),
+        "span_sd": number(history.span_sd_ratio),
+        "says": history.says,
     }
 
 
