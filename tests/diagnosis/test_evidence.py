@@ -207,3 +207,15 @@ def test_misfit_sentence_names_what_stands_beside() -> None:
     assert misfit_sentence(84.2, 11.4, 18, "a leak") == (
         "Misfit 84 → 11 over 18 readings with it and a leak (sum of squares, in standard deviations)."
     )
+
+
+def test_log_prior_of_a_stuck_gauge_is_that_of_one_cause_at_one_gauge_from_one_moment() -> None:
+    """35 % of jobs have one cause; kinds alike, five gauges alike, eleven moments alike: twelve pieces, the last no moment to begin."""
+    model, spells = line()
+    stuck = float(spells[1].reading_pa[1])
+    for one in spells:
+        one.reading_pa[1] = stuck if one.start_s >= 1225.0 else one.reading_pa[1]
+    _, posterior, _ = judged(model, spells)
+    kinds = len({mark.kind for mark in posterior.frame.marks} | {CauseKind.WRONG_UNIT}) + posterior.other_kinds
+    alone = next(e for e in posterior.explanations if e.keys == {(CauseKind.FROZEN, Place(gauge="PT-B"))})
+    assert alone.log_prior == pytest.approx(math.log(0.35 / kinds / 5.0 / 11.0), abs=1e-9)

@@ -12,11 +12,11 @@ import pytest
 
 from headledger.diagnosis.result import CheckResult, Verdict
 from headledger.sheets.columns import flow_words
-from headledger.sheets.content import HEADING, NOT_A_CERTIFICATE, fingerprint
+from headledger.sheets.content import HEADING, NOT_A_CERTIFICATE, NUMBERS_ELSEWHERE, fingerprint
 from headledger.sheets.marks import by_trouble
 from headledger.sheets.pdf import sheets_to_pdf
 from headledger.sheets.pdf_paper import MARGIN, Paper
-from tests.made_results import found_gauge
+from tests.made_results import SHIFT_EVIDENCE, ZERO_SHIFT, found_gauge
 from tests.outside_programs import needs
 from tests.sample_results import sample_result
 
@@ -180,3 +180,21 @@ def test_fingerprint_is_what_sha256sum_makes(sound_result: CheckResult, tmp_path
         ["sha256sum"], input=f"{item.sha256}  {item.file}\n", capture_output=True, text=True, check=True
     )
     assert done.stdout.split()[0] == fingerprint(sound_result)
+
+
+@needs("pdftotext")
+@pytest.mark.parametrize("paper", Paper)
+def test_gauge_with_more_evidence_than_fits_keeps_to_one_page_and_says_where_the_rest_is(
+    troubled_result: CheckResult, tmp_path: Path, paper: Paper
+):
+    evidence = replace(SHIFT_EVIDENCE, against=SHIFT_EVIDENCE.against * 5)
+    many = tuple(replace(ZERO_SHIFT, evidence=evidence, says=f"Finding {number} of PT-3.") for number in range(5))
+    gauge = replace(troubled_result.gauges[2], causes=tuple(range(5)))
+    result = replace(troubled_result, causes=many, gauges=(gauge,))
+    pages = pages_of(sheets_to_pdf(result, paper=paper), tmp_path, "-raw")
+    page = re.sub(r"\s+", " ", pages[-1])
+    assert "PT-3 at S3" in page
+    assert "Accepted by:" in page
+    assert NUMBERS_ELSEWHERE in page
+    assert page.count("The readings favour it 32 to 1") in (5, 10, 15, 20)
+    assert all(f"Finding {number} of PT-3." in page for number in range(5))

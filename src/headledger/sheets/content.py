@@ -24,6 +24,9 @@ NOT_A_CERTIFICATE = (
     "not with a reference standard."
 )
 SIGNATURES = ("Checked by", "Accepted by")
+NUMBERS_ELSEWHERE = (
+    "More of what findings rest on would not fit here; the result file (--json) and check --why have it."
+)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

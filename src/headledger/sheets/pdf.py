@@ -11,6 +11,7 @@ from reportlab.platypus import Flowable, KeepTogether, PageBreak, Spacer
 
 from headledger.diagnosis.result import CheckResult, GaugeFound
 from headledger.sheets import content
+from headledger.sheets.content import GaugePage
 from headledger.sheets.fonts import register_fonts
 from headledger.sheets.gauge_facts import conditions
 from headledger.sheets.grade_picture import best_way, grade_picture, tells_most
@@ -28,6 +29,7 @@ from headledger.sheets.pdf_parts import (
     as_left,
     cautions,
     finding_lines,
+    height_of,
     identity,
     inputs,
     signatures,
@@ -62,7 +64,7 @@ def sheets_to_pdf(result: CheckResult, *, paper: Paper = Paper.A4, gauges: Seque
     register_fonts()
     buffer = BytesIO()
     room = ROOMS[paper]
-    document = Document(buffer, result, room.page)
+    document = Document(buffer, result, room)
     chosen = [gauge for gauge in by_trouble(result.gauges) if gauges is None or gauge.tag in gauges]
     story = _summary(result, room)
     ways = ways_through(result.job)
@@ -130,9 +132,25 @@ def _way_picture(
 
 
 def _gauge_page(result: CheckResult, gauge: GaugeFound, ways: Sequence[Way], room: Room) -> list[Flowable]:
-    """Everything on one gauge."""
-    width = room.width
+    """Everything on one gauge, on one page: for that, pictures are drawn lower, then less is told of what findings rest on."""
     page = content.gauge_page(result, gauge)
+    foot = _gauge_foot(result, room.width)
+    head = _gauge_head(result, page, ways, room)
+    lower = room.lower()
+    for told in range(len(page.behind), -1, -1):
+        findings = _gauge_findings(page, told)
+        left = room.height - height_of([*findings, *foot], room.width)
+        if height_of(head, room.width) <= left:
+            break
+        if height_of(head, room.width) - room.pictures + lower.pictures <= left:
+            head = _gauge_head(result, page, ways, lower)
+            break
+    return [*head, *findings, KeepTogether(foot)]
+
+
+def _gauge_head(result: CheckResult, page: GaugePage, ways: Sequence[Way], room: Room) -> list[Flowable]:
+    """What a gauge is, its numbers and its pictures."""
+    width, gauge = room.width, page.gauge
     story: list[Flowable] = [
         title_line(page, width),
         words(page.why, BODY),
@@ -153,17 +171,25 @@ def _gauge_page(result: CheckResult, gauge: GaugeFound, ways: Sequence[Way], roo
     trend = trend_picture(result, gauge)
     if trend is not None:
         story += [Spacer(1, 3), PictureOnPaper(trend, width, room.trend)]
-    story += [words("Causes and what they cannot be told from", SECTION), *finding_lines(page.findings, page.behind)]
-    story.append(
-        KeepTogether(
-            [
-                words("As left, by hand", SECTION),
-                as_left(width),
-                words("Caution", SECTION),
-                cautions(),
-                *signatures(width),
-                *inputs(result),
-            ]
-        )
-    )
     return story
+
+
+def _gauge_findings(page: GaugePage, told: int) -> list[Flowable]:
+    """A gauge's findings, with what so many of them rest on."""
+    return [
+        words("Causes and what they cannot be told from", SECTION),
+        *finding_lines(page.findings, page.behind[:told]),
+        *([words(content.NUMBERS_ELSEWHERE, FINE)] if any(page.behind[told:]) else []),
+    ]
+
+
+def _gauge_foot(result: CheckResult, width: float) -> list[Flowable]:
+    """What is filled in by hand, and what every page ends with."""
+    return [
+        words("As left, by hand", SECTION),
+        as_left(width),
+        words("Caution", SECTION),
+        cautions(),
+        *signatures(width),
+        *inputs(result),
+    ]

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from enum import StrEnum
 from io import BytesIO
 from typing import Any
@@ -21,6 +21,7 @@ from headledger.sheets.fonts import BOLD, PLAIN
 MARGIN = 14.0 * mm
 """Nothing is drawn nearer to the edge of the paper. [pt]"""
 
+_LOWER = 0.75
 _HEADER, _FOOTER = 10.0 * mm, 5.0 * mm
 RULE = Color(0.6, 0.6, 0.6)
 SMALL, TEXT, LARGE = 6.6, 7.7, 13.0
@@ -46,9 +47,23 @@ class Room:
         """Between the margins."""
         return float(self.page[0] - 2.0 * MARGIN)
 
+    @property
+    def pictures(self) -> float:
+        """Height of both pictures."""
+        return self.line + self.trend
+
+    def lower(self) -> Room:
+        """The same with lower pictures, where words need the room."""
+        return replace(self, line=_LOWER * self.line, trend=_LOWER * self.trend)
+
+    @property
+    def height(self) -> float:
+        """Between what stands above and below on every page."""
+        return float(self.page[1] - 2.0 * MARGIN - _HEADER - _FOOTER)
+
 
 ROOMS: dict[Paper, Room] = {
-    Paper.A4: Room(page=A4, line=41.0 * mm, trend=25.0 * mm),
+    Paper.A4: Room(page=A4, line=45.0 * mm, trend=28.0 * mm),
     Paper.LETTER: Room(page=LETTER, line=32.0 * mm, trend=19.0 * mm),
 }
 
@@ -56,10 +71,10 @@ ROOMS: dict[Paper, Room] = {
 class Document(BaseDocTemplate):  # type: ignore[misc]  # the library publishes no types
     """Pages with the job above and what made them below."""
 
-    def __init__(self, target: BytesIO, result: CheckResult, size: tuple[float, float]) -> None:
+    def __init__(self, target: BytesIO, result: CheckResult, room: Room) -> None:
         super().__init__(
             target,
-            pagesize=size,
+            pagesize=room.page,
             title=f"{content.HEADING}: {result.job.title}",
             author=result.job.prepared_by,
             creator="headledger",
@@ -71,8 +86,8 @@ class Document(BaseDocTemplate):  # type: ignore[misc]  # the library publishes 
         frame = Frame(
             MARGIN,
             MARGIN + _FOOTER,
-            size[0] - 2.0 * MARGIN,
-            size[1] - 2.0 * MARGIN - _HEADER - _FOOTER,
+            room.width,
+            room.height,
             leftPadding=0,
             rightPadding=0,
             topPadding=0,

@@ -43,10 +43,23 @@ SECTION = style(8.5, bold=True, before=4.0, after=1.0)
 TITLE = style(LARGE, bold=True)
 
 
+_ENDLESS = 1e6
+
+
 def words(text: str, style: ParagraphStyle = BODY) -> Paragraph:
     """Words from files, never taken for markup."""
     safe = text.replace("&", "&amp;").replace("<", "&lt;").replace(">", "&gt;")
     return Paragraph(safe.replace("\n", "<br/>"), style)
+
+
+def height_of(flowables: Sequence[Flowable], width: float) -> float:
+    """How high blocks stand below one another: the space between two is the larger of what both ask for. [pt]"""
+    height = after = 0.0
+    for flowable in flowables:
+        height += flowable.wrap(width, _ENDLESS)[1] + max(flowable.getSpaceBefore() - after, 0.0)
+        after = flowable.getSpaceAfter()
+        height += after
+    return height
 
 
 def table(
