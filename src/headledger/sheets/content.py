@@ -10,7 +10,7 @@ from headledger import __version__
 from headledger.diagnosis.result import CauseFound, CheckResult, GaugeFound, GaugeSpell, SpellFound
 from headledger.diagnosis.wording import budget_sentence
 from headledger.sheets.columns import error_columns, flow_words, flows_line, spell_columns
-from headledger.sheets.gauge_facts import Fact, conditions, identity
+from headledger.sheets.gauge_facts import Fact, conditions, history_lines, identity
 from headledger.sheets.headline import check_worth, told_causes
 from headledger.sheets.marks import by_trouble, verdict_label
 from headledger.sheets.numbers import clock_range, percent
@@ -52,7 +52,7 @@ class GaugePage:
     behind : tuple of str
         What each of them rests on: its odds, and how far this gauge is off with no cause and with it; empty where nothing is at hand.
     budget : str
-        Where the uncertainty comes from.
+        Where the uncertainty comes from, and how it kept to its neighbours.
     """
 
     gauge: GaugeFound
@@ -99,7 +99,9 @@ def gauge_page(result: CheckResult, gauge: GaugeFound) -> GaugePage:
         spells=tuple(_spell_row(result, gauge, spell, said) for spell, said in _paired(result, gauge)),
         findings=_told(causes),
         behind=tuple(_behind(cause, gauge) for cause in told_causes(causes)[0]),
-        budget=budget_sentence(gauge.tag, gauge.budget),
+        budget=" ".join(
+            part for part in (budget_sentence(gauge.tag, gauge.budget), *history_lines(result, gauge)) if part
+        ),
     )
 
 
