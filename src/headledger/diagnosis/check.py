@@ -15,6 +15,7 @@ from headledger.diagnosis.evidence import evidence_of
 from headledger.diagnosis.findings import list_findings
 from headledger.diagnosis.fit import fit_of
 from headledger.diagnosis.history import gauge_histories
+from headledger.diagnosis.lags import unlagged
 from headledger.diagnosis.layout import Layout
 from headledger.diagnosis.next_checks import next_checks
 from headledger.diagnosis.readings import read_timeline, with_logged_barometer
@@ -123,7 +124,7 @@ def check_job(
         stretches = find_spells(layout, timeline)
         again = find_traits(layout, timeline, stretches)
         traits = (*undone_traits(traits), *(one for one in again if one.kind is not CauseKind.CLOCK_OFFSET))
-    pieces = spell_pieces(layout, timeline, stretches)
+    pieces = spell_pieces(layout, unlagged(timeline, traits), stretches)
     if not pieces:
         raise NothingToCheckError(
             f"{job.title}: the log holds no stretch in which the flow state is steady and a gauge gives a reading. "

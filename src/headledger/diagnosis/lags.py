@@ -6,7 +6,7 @@ A change takes its time through the pipe; what a wave's way explains is neither.
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -35,6 +35,9 @@ TRAVEL_STEPS = 8
 SETTLED_SHARE = 0.25
 """Longest lag that is looked for, as a part of the usual spell. [-]"""
 
+LOOKS_SLOW = 3.0
+"""Log density for a lag from which it is undone before the rest is judged. [nat]"""
+
 PER_CHANGE = 6.0
 """A change of flow tells of a gauge's lag as much as so many independent readings. [-]"""
 
@@ -59,6 +62,34 @@ def slow_gauges(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> 
         if fit.log_ratio > 0.0:
             found.append(_timed(CauseKind.SLUGGISH, Place(gauge=gauge.tag), (index,), fit, len(layout.job.gauges)))
     return found
+
+
+def unlagged(timeline: Timeline, traits: Sequence[Trait]) -> Timeline:
+    """The log with the lag of gauges that look slow undone, so that what is left of the state before moves no mean.
+
+    Parameters
+    ----------
+    timeline : Timeline
+    traits : sequence of Trait
+
+    Returns
+    -------
+    Timeline
+
+    Notes
+    -----
+    ``x = y + τ dy/dt``, with the change from the block before to the one after; over a stretch these changes sum to that between its
+    ends, so that its mean gains little noise.
+    """
+    slow = [one for one in traits if one.kind is CauseKind.SLUGGISH and one.log_ratio > LOOKS_SLOW]
+    if not slow:
+        return timeline
+    reading, time_s = timeline.reading_pa.copy(), timeline.start_s
+    for trait in slow:
+        own = timeline.reading_pa[:, trait.own[0]]
+        rate = (own[2:] - own[:-2]) / (time_s[2:] - time_s[:-2])
+        reading[1:-1, trait.own[0]] += trait.size * np.where(np.isfinite(rate), rate, 0.0)
+    return replace(timeline, reading_pa=reading)
 
 
 def late_logs(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> list[Trait]:

@@ -237,7 +237,10 @@ def trait_statement(model: Model, kind: CauseKind, place: Place, size: float) ->
             f"{at} scatters far more than the gauges around it: look at its wiring, its damping and its impulse line."
         )
     if kind is CauseKind.SLUGGISH:
-        return f"{at} follows every change late, with a time constant of about {size:.0f} s: a plugged line, or heavy damping."
+        return (
+            f"{at} follows every change late, with a time constant of about {size:.0f} s: a plugged line, or heavy damping; "
+            "what that left in its readings was taken off before the rest was judged."
+        )
     if kind is CauseKind.CLOCK_OFFSET:
         way = "late" if size > 0.0 else "early"
         verb = "is" if place.gauge else "are"
