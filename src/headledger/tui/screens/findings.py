@@ -72,7 +72,14 @@ Marks: ▲ fail, ? unresolved, – unchecked, ✓ pass; ↑ or ↓ beside a gaug
         Binding("g", "gauges", "Gauges", id="gauges", show=False),
         Binding("enter", "open", "Gauge", id="open", priority=True),
         Binding("y", "why", "Why", id="why"),
-        Binding("r", "again", "Again", id="again", tooltip="Check the job again, with what is in its folder now"),
+        Binding(
+            "r",
+            "again",
+            "Again",
+            id="again",
+            show=False,
+            tooltip="Check the job again, with what is in its folder now",
+        ),
     ]
 
     spell_index: var[int] = var(0, init=False)
