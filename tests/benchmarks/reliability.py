@@ -320,9 +320,9 @@ def report(judged: list[Judged]) -> None:
         )
     print(f"calibration error: {calibration_error(entries):.3f} over {len(entries)} probabilities")
     times, whole = np.array([j.seconds for j in judged]), np.array([j.whole_seconds for j in judged])
-    print(
-        f"judgement: median {np.median(times):.2f} s, worst {times.max():.2f} s; with reading {np.median(whole):.2f}, {whole.max():.2f} s"
-    )
+    slowest = judged[int(np.argmax(times))].seed
+    print(f"judgement: median {np.median(times):.2f} s, worst {times.max():.2f} s (seed {slowest})")
+    print(f"with reading:     {np.median(whole):.2f} s, worst {whole.max():.2f} s")
     _by_kind(single)
 
 

@@ -68,6 +68,7 @@ def test_drift_is_found_with_its_rate_and_beginning():
     assert findings[0].place.gauge == "PT-C"
     assert findings[0].size == pytest.approx(30_000.0 / 3600.0, rel=0.1)
     assert findings[0].mark.start_s == pytest.approx(2000.0, abs=300.0)
+    assert abs(findings[0].mark.start_s - 2000.0) < 2.0 * findings[0].start_sd_s
     assert judge_gauge(made, posterior, 2).verdict is Verdict.FAIL
     assert judge_gauge(made, posterior, 1).verdict is Verdict.PASS
 
@@ -82,6 +83,8 @@ def test_step_is_found_where_it_happens():
     assert findings[0].place.gauge == "PT-D"
     assert findings[0].size == pytest.approx(15_000.0, abs=1_500.0)
     assert findings[0].mark.start_s == 2450.0
+    # one moment between two pieces of 225 s is sure, and within a piece nothing is known: 225 / √12
+    assert findings[0].start_sd_s == pytest.approx(225.0 / 12.0**0.5, rel=0.02)
 
 
 def test_frozen_gauge_is_found_and_fails_though_its_class_is_narrow():

@@ -34,7 +34,7 @@ def test_result_file_of_a_troubled_job_has_the_promised_keys(troubled_result: Ch
         "given", "why", "budget", "history",
     }  # fmt: skip
     assert set(written["causes"][0]) == {
-        "kind", "at", "size", "u95", "unit", "start", "probability", "accepted", "rivals", "says",
+        "kind", "at", "size", "u95", "unit", "start", "start_u95", "probability", "accepted", "rivals", "says",
         "evidence",
     }  # fmt: skip
 

@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 from collections import defaultdict
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+
+import numpy as np
 
 from headledger.diagnosis.causes.base import Mark
 from headledger.diagnosis.frame import Frame
@@ -43,6 +45,8 @@ class Finding:
         Its mark there.
     size, sd : float
         Posterior mean and standard deviation of its size there, as the mark counts it.
+    start_sd_s : float
+        Standard deviation of the moment at which it begins, over all explanations that hold it. [s]
     statement : str
         What it says of itself, where that is more than its mark tells.
     """
@@ -55,6 +59,7 @@ class Finding:
     mark: Mark
     size: float
     sd: float
+    start_sd_s: float = 0.0
     statement: str = ""
 
     @property
@@ -82,10 +87,14 @@ def list_findings(posterior: Posterior) -> tuple[Finding, ...]:
     """
     probability: dict[Key, float] = defaultdict(float)
     best: dict[Key, Explanation] = {}
+    starts: dict[Key, list[tuple[float, float]]] = defaultdict(list)
     for explanation in posterior.explanations:
         for key in explanation.keys:
             probability[key] += explanation.probability
             best.setdefault(key, explanation)
+        for mark in (explanation.frame.marks[i] for i in explanation.chosen):
+            if mark.start_s is not None:
+                starts[mark.key].append((explanation.probability, mark.start_s))
     swaps = _swaps(posterior)
     ordered = sorted(probability, key=lambda key: -probability[key])
     left = sum(probability.values())
@@ -94,8 +103,21 @@ def list_findings(posterior: Posterior) -> tuple[Finding, ...]:
         if left < LEFT_OUT:
             break
         left -= probability[key]
-        found.append(_finding(key, best[key], probability, swaps))
+        finding = _finding(key, best[key], probability, swaps)
+        found.append(replace(finding, start_sd_s=_start_sd_s(posterior, starts.get(key, []))))
     return tuple(found)
+
+
+def _start_sd_s(posterior: Posterior, starts: list[tuple[float, float]]) -> float:
+    """Standard deviation of a moment that several explanations put elsewhere, each to within a piece of time. [s]"""
+    weights = np.array([weight for weight, _ in starts])
+    if not weights.size or weights.sum() <= 0.0:
+        return 0.0
+    moments = np.array([moment for _, moment in starts])
+    mean = float(weights @ moments / weights.sum())
+    pieces = posterior.frame.linear.model.spells
+    piece_s = float(np.median([piece.end_s - piece.start_s for piece in pieces]))
+    return float(np.sqrt(weights @ (moments - mean) ** 2 / weights.sum() + piece_s**2 / 12.0))
 
 
 def _swaps(posterior: Posterior) -> dict[Key, dict[Key, float]]:

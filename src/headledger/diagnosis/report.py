@@ -153,6 +153,7 @@ def cause_found(model: Model, finding: Finding, evidence: Evidence | None) -> Ca
         u95=None if finding.kind in SIZELESS else 2.0 * finding.sd * abs(finding.mark.size_factor),
         unit=finding.mark.unit,
         start_s=finding.mark.start_s,
+        start_u95_s=None if finding.mark.start_s is None else 2.0 * finding.start_sd_s,
         probability=finding.probability,
         accepted=finding.accepted,
         rivals=finding.rivals,

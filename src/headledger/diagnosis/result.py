@@ -381,6 +381,8 @@ class CauseFound:
         In which the size is spoken of; None for ratios and loss coefficients.
     start_s : float or None
         When a drift, step or frozen begins. [s since 1970-01-01 UTC]
+    start_u95_s : float or None
+        How well that is known, with k = 2. [s]
     probability : float
         Summed over every set of causes weighed. [-]
     accepted : bool
@@ -399,6 +401,7 @@ class CauseFound:
     probability: float
     accepted: bool
     start_s: float | None = None
+    start_u95_s: float | None = None
     rivals: tuple[Rival, ...] = ()
     says: str = ""
     evidence: Evidence | None = None

@@ -93,6 +93,12 @@ def clock(model: Model, time_s: float) -> str:
     return _time_of_day(ZoneInfo(model.layout.job.timezone), time_s)
 
 
+def _start(model: Model, finding: Finding) -> str:
+    """When a finding begins, and how well that is known."""
+    minutes = 2.0 * finding.start_sd_s / 60.0
+    return f"{clock(model, finding.mark.start_s or 0.0)} (± {max(minutes, 1.0):.0f} min)"
+
+
 def kind_words(kind: CauseKind) -> str:
     """A kind of cause in words, with its article."""
     return KIND_WORDS[kind]
@@ -296,11 +302,11 @@ def _statement(model: Model, finding: Finding) -> str:
     if finding.kind is CauseKind.DRIFT and unit and finding.mark.start_s is not None:
         way = "up" if size > 0.0 else "down"
         rate = amount(abs(size) * SECONDS_PER_HOUR, unit)
-        return f"{at} drifts {way} by {rate} an hour from about {clock(model, finding.mark.start_s)} on."
+        return f"{at} drifts {way} by {rate} an hour from about {_start(model, finding)} on."
     if finding.kind is CauseKind.STEP and unit and finding.mark.start_s is not None:
-        return f"{at} jumps to {amount(abs(size), unit)} {direction} at about {clock(model, finding.mark.start_s)} and stays there."
+        return f"{at} jumps to {amount(abs(size), unit)} {direction} at about {_start(model, finding)} and stays there."
     if finding.kind is CauseKind.FROZEN:
-        since = "" if finding.mark.start_s is None else f" from about {clock(model, finding.mark.start_s)} on"
+        since = "" if finding.mark.start_s is None else f" from about {_start(model, finding)} on"
         return f"{at} does not follow what happens around it{since}: stuck, or its own valve is shut."
     if finding.kind is CauseKind.PUMP_LIFT:
         return f"The pump at {at} lifts {size:.3g} times what its curve says: look at speed, rotation, impeller and suction."

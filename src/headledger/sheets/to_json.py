@@ -168,6 +168,7 @@ def _cause(cause: CauseFound) -> dict[str, Any]:
         "u95": number(u95),
         "unit": unit_text,
         "start": stamp(cause.start_s),
+        "start_u95": number(cause.start_u95_s),
         "probability": number(cause.probability),
         "accepted": cause.accepted,
         "rivals": [_rival(rival) for rival in cause.rivals],
