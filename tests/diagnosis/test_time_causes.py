@@ -68,7 +68,9 @@ def test_drift_is_found_with_its_rate_and_beginning():
     assert findings[0].place.gauge == "PT-C"
     assert findings[0].size == pytest.approx(30_000.0 / 3600.0, rel=0.1)
     assert findings[0].mark.start_s == pytest.approx(2000.0, abs=300.0)
-    assert abs(findings[0].mark.start_s - 2000.0) < 2.0 * findings[0].start_sd_s
+    begin_s = findings[0].mark.start_s
+    assert begin_s is not None
+    assert abs(begin_s - 2000.0) < 2.0 * findings[0].start_sd_s
     assert judge_gauge(made, posterior, 2).verdict is Verdict.FAIL
     assert judge_gauge(made, posterior, 1).verdict is Verdict.PASS
 

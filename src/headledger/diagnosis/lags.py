@@ -35,6 +35,9 @@ TRAVEL_STEPS = 8
 SETTLED_SHARE = 0.25
 """Longest lag that is looked for, as a part of the usual spell. [-]"""
 
+SMOOTHING_BLURS = 1.4
+"""Widest smoothing of the others that is held against a lag, in the shortest lag that counts: wider, it would follow nothing. [-]"""
+
 LOOKS_SLOW = 3.0
 """Log density for a lag from which it is undone before the rest is judged. [nat]"""
 
@@ -56,8 +59,10 @@ def slow_gauges(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) -> 
         errors = np.array([_unexplained(told, motions) for motions in tried])
         degrees = _degrees(told, tried[int(np.argmin(errors))], spells)
         # a lag smooths the others' noise away as well as it delays: what smoothing alone explains is none
-        smooth = np.array([_unexplained(told, _smoothed(told.time_s, told.motions, float(lag))) for lag in lags])
-        sound = np.minimum(_sound_error(layout, timeline, told, gauge.damping_s), smooth)
+        sound = _sound_error(layout, timeline, told, gauge.damping_s)
+        if errors.min() < sound:
+            best = min(float(lags[int(np.argmin(errors))]), SMOOTHING_BLURS * float(lags[0]))
+            sound = min(sound, _unexplained(told, _smoothed(told.time_s, told.motions, best)))
         fit = _Fit(sound, errors, lags, degrees)
         if fit.log_ratio > 0.0:
             found.append(_timed(CauseKind.SLUGGISH, Place(gauge=gauge.tag), (index,), fit, len(layout.job.gauges)))

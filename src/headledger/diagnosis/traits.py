@@ -35,8 +35,8 @@ NOISE_SPREAD = 0.15
 NOISY_RANGE = (0.4, 3.0)
 """Common logarithm of how much noisier than its like a noisy signal is, from and to, evenly between. [-]"""
 
-JUMPS_SHARE = 0.03
-"""Part of a signal's steps, the widest, that say nothing of its noise. [-]"""
+JUMPS_A_SPELL = 1
+"""As many of a signal's steps in a spell, the widest of all, say nothing of its noise: one jump is none. [-]"""
 
 NOISE_THAT_MATTERS = 0.2
 """Noise of a single reading below this part of the tolerance is no trouble. [-]"""
@@ -84,7 +84,7 @@ def noisy_gauges(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) ->
         reading = timeline.reading_pa[spell.first : spell.last]
         rest = reading - np.where(single[None, :], common_motion(reading, single)[:, None], 0.0)
         steps.append(np.diff(rest, axis=0))
-    noise, counts = _scatter(np.concatenate(steps))
+    noise, counts = _scatter(np.concatenate(steps), JUMPS_A_SPELL * len(spells))
     usable = (counts >= FEWEST_SAMPLES) & (noise > 0.0)
     if usable.sum() < FEWEST_GAUGES:
         return []
@@ -113,11 +113,11 @@ def noisy_gauges(layout: Layout, timeline: Timeline, spells: Sequence[Spell]) ->
     return found
 
 
-def _scatter(steps: Array) -> tuple[Array, Array]:
-    """Noise of each column from its successive differences, and how many there are; the widest are left out: one jump is no noise."""
+def _scatter(steps: Array, jumps: int) -> tuple[Array, Array]:
+    """Noise of each column from its successive differences, and how many there are; so many of the widest are left out."""
     squares = np.sort(np.where(np.isfinite(steps), steps**2, np.inf), axis=0)
     counts = np.isfinite(steps).sum(axis=0)
-    kept = np.ceil((1.0 - JUMPS_SHARE) * counts)
+    kept = np.maximum(counts - jumps, counts // 2)
     squares[np.arange(squares.shape[0])[:, None] >= kept[None, :]] = 0.0
     return np.sqrt(squares.sum(axis=0) / np.maximum(kept, 1.0) / 2.0), counts
 
