@@ -84,7 +84,8 @@ def station_heads(model: Model, frame: Frame, chosen: Sequence[int], index: int)
             drops[column] = mark.drops_m[index] * mean_size[column]
             by_size[:, column] = -state.graph.path @ mark.drops_m[index]
     shared_mean = white.shared.T @ (frame.residual - white.operator @ (mean_size @ whole))
-    rest = group.residual + np.linalg.solve(white.operator, offset)[cut] - mean_size @ whole[:, cut]
+    put_in = np.linalg.solve(white.operator, offset)[cut] if offset.any() else 0.0
+    rest = group.residual + put_in - mean_size @ whole[:, cut]
     estimate = own_estimate(_with_residual(group, rest), shared_mean)
     # what is applied already is in the state's heads
     head = state.head_m + own @ estimate + shared @ shared_mean + by_size @ (mean_size - applied_sizes(frame, chosen))
